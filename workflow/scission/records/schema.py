@@ -1,0 +1,64 @@
+"""The record schema: every scalar and array a record may hold, with type, unit, shape and meaning.
+
+It is the one source for HDF5 attributes, table columns and the documented list of fields.
+"""
+
+from __future__ import annotations
+
+from typing import NamedTuple
+
+SCHEMA_VERSION = 1
+
+STATUSES = ("converged", "unconverged", "failed", "lost", "skipped")
+
+REASONS = {
+    "": "nothing to report",
+    "not-converged": "iterations ran out before the criteria were met",
+    "raised": "the calculation stopped with an error",
+    "time-limit": "the calculation used up its time budget",
+    "memory-limit": "the calculation used up its memory budget",
+    "killed": "the calculation's process was killed from outside",
+    "scheduler-limit": "the scheduler was about to end the job",
+    "reference-missing": "the reference wavefunction this point needs did not succeed",
+    "not-finite": "the energy or an array is not a finite number",
+    "bound-violated": "the energy lies below a bound that cannot be passed",
+    "spin": "the wavefunction does not have the spin that was asked for",
+    "lost": "the job vanished and left nothing",
+    "damaged": "the record could not be read and was set aside",
+}
+
+
+class Field(NamedTuple):
+    """One quantity of a record: numpy dtype, unit, shape (names of its axes) and meaning."""
+
+    name: str
+    dtype: str
+    unit: str
+    shape: tuple[str, ...]
+    meaning: str
+
+
+SCALARS = (
+    Field("energy", "f8", "hartree", (), "total energy of the level; of the lowest state if there are several"),
+    Field("energy_reference", "f8", "hartree", (), "total energy of the reference wavefunction"),
+    Field("energy_correlation", "f8", "hartree", (), "correlation energy added to the reference"),
+    Field("energy_triples", "f8", "hartree", (), "perturbative triples part of the correlation energy"),
+    Field("energy_nuclear", "f8", "hartree", (), "repulsion of the nuclei"),
+    Field("n_basis", "i8", "1", (), "number of basis functions"),
+    Field("n_correlated", "i8", "1", (), "number of correlated electrons"),
+    Field("wall_s", "f8", "s", (), "wall time of the calculation"),
+    Field("cpu_s", "f8", "s", (), "processor time of the calculation"),
+    Field("peak_memory_mb", "f8", "MB", (), "largest resident memory of the process"),
+)
+
+ARRAYS = (
+    Field("positions", "f8", "bohr", ("atom", "xyz"), "nuclear positions"),
+    Field("state_energies", "f8", "hartree", ("state",), "total energies of the states, adiabatic order"),
+    Field("state_labels", "i8", "1", ("state",), "label that follows each state through crossings"),
+    Field("natural_occupations", "f8", "1", ("orbital",), "spin-summed natural occupations, decreasing"),
+    Field("orbital_energies", "f8", "hartree", ("spin", "mo"), "orbital energies of the reference"),
+    Field("dipole", "f8", "e*bohr", ("xyz",), "dipole moment of the reference"),
+    Field("mo_coeff", "f8", "1", ("spin", "ao", "mo"), "orbital coefficients of the reference"),
+    Field("mo_occ", "f8", "1", ("spin", "mo"), "orbital occupations of the reference"),
+    Field("ci", "f8", "1", ("state", "alpha_string", "beta_string"), "CI vectors of the active space"),
+)
