@@ -39,7 +39,7 @@ class Field(NamedTuple):
 
 
 SCALARS = (
-    Field("energy", "f8", "hartree", (), "total energy of the level; of the lowest state if there are several"),
+    Field("energy", "f8", "hartree", (), "total energy of the level; of the lowest state if several"),
     Field("energy_reference", "f8", "hartree", (), "total energy of the reference wavefunction"),
     Field("energy_correlation", "f8", "hartree", (), "correlation energy added to the reference"),
     Field("energy_triples", "f8", "hartree", (), "perturbative triples part of the correlation energy"),

@@ -1,0 +1,99 @@
+"""Bytes of a record: a zip archive of ``record.json`` and one ``<array>.npy`` per array.
+
+The members are stored without compression, so that ``numpy.load`` reads the arrays and the
+archive's CRC-32 of each member tells a damaged file from a good one.
+"""
+
+from __future__ import annotations
+
+import ast
+import io
+import json
+import math
+import zipfile
+from collections.abc import Mapping
+from typing import IO, Any
+
+import numpy as np
+
+HEAD = "record.json"
+_EPOCH = (1980, 1, 1, 0, 0, 0)  # the same record gives the same bytes at any time
+_EINVAL = 22
+
+
+class DamagedRecordError(Exception):
+    """The bytes are not a record that was written whole; the message says what is wrong."""
+
+
+def pack(head: Mapping[str, Any], arrays: Mapping[str, np.ndarray]) -> bytes:
+    """Archive of a JSON head and arrays.
+
+    Raises:
+        ValueError: an array of Python objects, or a head JSON cannot hold.
+    """
+    buffer = io.BytesIO()
+    with zipfile.ZipFile(buffer, "w", zipfile.ZIP_STORED) as archive:
+        text = json.dumps(head, ensure_ascii=True, allow_nan=False, separators=(",", ":"))
+        archive.writestr(zipfile.ZipInfo(HEAD, _EPOCH), text)
+        for name, array in arrays.items():
+            member = io.BytesIO()
+            np.lib.format.write_array(member, np.asarray(array), version=(1, 0), allow_pickle=False)
+            archive.writestr(zipfile.ZipInfo(f"{name}.npy", _EPOCH), member.getvalue())
+    return buffer.getvalue()
+
+
+def unpack(
+    handle: IO[bytes], arrays: bool | tuple[str, ...] = True
+) -> tuple[dict[str, Any], dict[str, np.ndarray]]:
+    """Head and arrays of an open record file; only the named arrays, or none, if ``arrays`` says so.
+
+    The checksum of every member that is read is verified.
+
+    Raises:
+        DamagedRecordError: not a zip archive, a checksum that does not match, or bad JSON.
+        OSError: the file system fails; that is no statement about the record.
+    """
+    try:
+        with zipfile.ZipFile(handle) as archive:
+            head = json.loads(_member(archive, HEAD))
+            if not isinstance(head, dict):
+                raise DamagedRecordError(f"{HEAD} does not hold an object")
+            return head, {name: _array(archive, name) for name in _wanted(archive, arrays)}
+    except OSError as error:
+        if error.errno not in (None, _EINVAL):  # a broken directory makes zipfile seek to nowhere
+            raise
+        raise DamagedRecordError(str(error)) from error
+    except (zipfile.BadZipFile, ValueError, KeyError, EOFError, RuntimeError, SyntaxError) as error:
+        raise DamagedRecordError(f"{type(error).__name__}: {error}") from error
+
+
+def _wanted(archive: zipfile.ZipFile, arrays: bool | tuple[str, ...]) -> list[str]:
+    if arrays is False:
+        return []
+    names = [name.removesuffix(".npy") for name in archive.namelist() if name.endswith(".npy")]
+    return names if arrays is True else [name for name in names if name in arrays]
+
+
+def _member(archive: zipfile.ZipFile, name: str) -> bytes:
+    info = archive.getinfo(name)
+    # A stored member is never larger than its archive: no archive bomb gets past this.
+    if info.compress_type != zipfile.ZIP_STORED or info.compress_size != info.file_size:
+        raise DamagedRecordError(f"{name} is compressed, records never are")
+    return archive.read(info)
+
+
+def _array(archive: zipfile.ZipFile, name: str) -> np.ndarray:
+    data = _member(archive, f"{name}.npy")
+    head = io.BytesIO(data)
+    if np.lib.format.read_magic(head) != (1, 0):
+        raise DamagedRecordError(f"{name}.npy has an unknown format version")
+    length = int.from_bytes(head.read(2), "little")
+    # Read by hand, because numpy would allocate whatever size the header claims.
+    claim = ast.literal_eval(head.read(length).decode("latin1"))
+    dtype = np.dtype(claim["descr"])
+    shape = tuple(int(size) for size in claim["shape"])
+    body = data[head.tell() :]
+    if dtype.hasobject or math.prod(shape) * dtype.itemsize != len(body):
+        raise DamagedRecordError(f"{name}.npy claims {shape} of {dtype} but holds {len(body)} bytes")
+    flat = np.frombuffer(body, dtype=dtype)
+    return np.array(flat.reshape(shape[::-1]).T if claim["fortran_order"] else flat.reshape(shape), order="C")
