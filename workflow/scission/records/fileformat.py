@@ -17,8 +17,10 @@ from typing import IO, Any
 import numpy as np
 
 HEAD = "record.json"
+ARRAY_LIST = "arrays"
 _EPOCH = (1980, 1, 1, 0, 0, 0)  # the same record gives the same bytes at any time
 _EINVAL = 22
+_MALFORMED = (ValueError, KeyError, TypeError, EOFError, RuntimeError, SyntaxError)
 
 
 class DamagedRecordError(Exception):
@@ -26,14 +28,15 @@ class DamagedRecordError(Exception):
 
 
 def pack(head: Mapping[str, Any], arrays: Mapping[str, np.ndarray]) -> bytes:
-    """Archive of a JSON head and arrays.
+    """Archive of a JSON head, which gains the list of the arrays, and of the arrays.
 
     Raises:
         ValueError: an array of Python objects, or a head JSON cannot hold.
     """
     buffer = io.BytesIO()
     with zipfile.ZipFile(buffer, "w", zipfile.ZIP_STORED) as archive:
-        text = json.dumps(head, ensure_ascii=True, allow_nan=False, separators=(",", ":"))
+        full = {**head, ARRAY_LIST: sorted(arrays)}
+        text = json.dumps(full, ensure_ascii=True, allow_nan=False, separators=(",", ":"))
         archive.writestr(zipfile.ZipInfo(HEAD, _EPOCH), text)
         for name, array in arrays.items():
             member = io.BytesIO()
@@ -58,20 +61,23 @@ def unpack(
             head = json.loads(_member(archive, HEAD))
             if not isinstance(head, dict):
                 raise DamagedRecordError(f"{HEAD} does not hold an object")
-            return head, {name: _array(archive, name) for name in _wanted(archive, arrays)}
+            return head, {name: _array(archive, name) for name in _wanted(archive, head, arrays)}
     except OSError as error:
         if error.errno not in (None, _EINVAL):  # a broken directory makes zipfile seek to nowhere
             raise
         raise DamagedRecordError(str(error)) from error
-    except (zipfile.BadZipFile, ValueError, KeyError, EOFError, RuntimeError, SyntaxError) as error:
+    except (zipfile.BadZipFile, *_MALFORMED) as error:
         raise DamagedRecordError(f"{type(error).__name__}: {error}") from error
 
 
-def _wanted(archive: zipfile.ZipFile, arrays: bool | tuple[str, ...]) -> list[str]:
-    if arrays is False:
-        return []
-    names = [name.removesuffix(".npy") for name in archive.namelist() if name.endswith(".npy")]
-    return names if arrays is True else [name for name in names if name in arrays]
+def _wanted(archive: zipfile.ZipFile, head: Mapping[str, Any], arrays: bool | tuple[str, ...]) -> list[str]:
+    # The archive's directory has no checksum of its own: a flipped bit there can hide a member.
+    names = sorted(head[ARRAY_LIST])
+    if sorted(archive.namelist()) != sorted([HEAD, *(f"{name}.npy" for name in names)]):
+        raise DamagedRecordError(f"holds {archive.namelist()}, its head lists {names}")
+    if arrays is True:
+        return names
+    return [name for name in names if name in arrays] if arrays else []
 
 
 def _member(archive: zipfile.ZipFile, name: str) -> bytes:

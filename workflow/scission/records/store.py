@@ -10,7 +10,7 @@ import logging
 import os
 import re
 from collections.abc import Iterator
-from dataclasses import dataclass, field, fields
+from dataclasses import dataclass, field
 from datetime import UTC, datetime
 from pathlib import Path
 from typing import Any
@@ -76,7 +76,7 @@ class Record:
     arrays: dict[str, np.ndarray] = field(default_factory=dict)
 
 
-_HEAD_FIELDS = tuple(item.name for item in fields(Record) if item.name != "arrays")
+_HEAD_TYPES = {name: type(value) for name, value in vars(Record("", "", "")).items() if name != "arrays"}
 
 
 class Store:
@@ -155,11 +155,11 @@ class Store:
 
 
 def _head(record: Record) -> dict[str, Any]:
-    head = {name: getattr(record, name) for name in _HEAD_FIELDS}
+    head = {name: getattr(record, name) for name in _HEAD_TYPES}
     head["message"] = one_line(record.message)
     for name in ("scalars", "diagnostics"):
         head[name] = {key: finite_or_none(value) for key, value in head[name].items()}
-    return {"record": SCHEMA_VERSION, "arrays": sorted(record.arrays)} | head
+    return {"record": SCHEMA_VERSION} | head
 
 
 def _record(head: dict[str, Any], arrays: dict[str, np.ndarray], kind: str, key: str) -> Record:
@@ -170,12 +170,12 @@ def _record(head: dict[str, Any], arrays: dict[str, np.ndarray], kind: str, key:
             f"record {key} has layout version {head.get('record')}, this program reads {SCHEMA_VERSION}: "
             "use the version of the program that wrote it, or another results folder"
         )
-    missing = [name for name in _HEAD_FIELDS if name not in head]
-    if missing:
-        raise DamagedRecordError(f"the file lacks {', '.join(missing)}")
+    wrong = [name for name, kind_of in _HEAD_TYPES.items() if not isinstance(head.get(name), kind_of)]
+    if wrong:
+        raise DamagedRecordError(f"the file lacks or misstates {', '.join(wrong)}")
     for name in ("scalars", "diagnostics"):
         head[name] = {item: np.nan if value is None else value for item, value in head[name].items()}
-    return Record(**{name: head[name] for name in _HEAD_FIELDS}, arrays=arrays)
+    return Record(**{name: head[name] for name in _HEAD_TYPES}, arrays=arrays)
 
 
 def _file_names(root: Path) -> Iterator[str]:

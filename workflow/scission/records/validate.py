@@ -35,7 +35,8 @@ def not_finite(record: Record) -> list[str]:
     """Names of the scalars, diagnostics and arrays with a value that is not finite."""
     numbers = record.scalars | record.diagnostics
     names = [name for name, value in numbers.items() if not math.isfinite(value)]
-    return names + [name for name, array in record.arrays.items() if not np.all(np.isfinite(array))]
+    floats = {name: array for name, array in record.arrays.items() if np.asarray(array).dtype.kind in "fc"}
+    return names + [name for name, array in floats.items() if not np.all(np.isfinite(array))]
 
 
 def settled(record: Record) -> Record:
