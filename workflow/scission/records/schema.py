@@ -27,6 +27,13 @@ REASONS = {
     "damaged": "the record could not be read and was set aside",
 }
 
+FLAGS = {
+    "single-reference": "one determinant describes the bond here",
+    "borderline": "diagnostics disagree or lie near their thresholds",
+    "multireference": "one determinant is not enough here",
+    "undetermined": "there is no diagnostic to judge by",
+}
+
 
 class Field(NamedTuple):
     """One quantity of a record: numpy dtype, unit, shape (names of its axes) and meaning."""
@@ -58,7 +65,27 @@ ARRAYS = (
     Field("natural_occupations", "f8", "1", ("orbital",), "spin-summed natural occupations, decreasing"),
     Field("orbital_energies", "f8", "hartree", ("spin", "mo"), "orbital energies of the reference"),
     Field("dipole", "f8", "e*bohr", ("xyz",), "dipole moment of the reference"),
-    Field("mo_coeff", "f8", "1", ("spin", "ao", "mo"), "orbital coefficients of the reference"),
+    Field(
+        "mo_lowdin",
+        "f8",
+        "1",
+        ("spin", "ao", "mo"),
+        "orbitals of the reference in symmetrically orthogonalised basis functions, S^1/2 C",
+    ),
     Field("mo_occ", "f8", "1", ("spin", "mo"), "orbital occupations of the reference"),
     Field("ci", "f8", "1", ("state", "alpha_string", "beta_string"), "CI vectors of the active space"),
 )
+
+TOO_LARGE_TO_GATHER = ("mo_coeff", "ci")
+"""Arrays that stay in the records of the references; all others go to campaign.h5."""
+
+POINT_TEXTS = (
+    Field("status", "str", "1", (), f"how the calculation ended: {', '.join(STATUSES)}"),
+    Field("reason", "str", "1", (), "why it did not succeed, from a short fixed list; empty if it did"),
+    Field("message", "str", "1", (), "the same in one line for a person"),
+    Field("key", "str", "1", (), "identity of the calculation; names its file in records/"),
+    Field("remedy", "str", "1", (), "what was done differently in the last attempt; empty for nothing"),
+    Field("flag", "str", "1", (), f"verdict on the point: {', '.join(FLAGS)}"),
+    Field("reasons", "str", "1", (), "the verdict's reasons in words"),
+)
+"""What campaign.h5 says of a point in words; the last two come from the analysis."""

@@ -97,6 +97,11 @@ class Store:
             raise ValueError(f"record key {key!r} must be 2 to 120 letters, digits, '-' or '_'")
         return self.folder / FOLDERS[kind] / key[:2] / f"{key}.npz"
 
+    def aside(self, kind: str, key: str) -> Path:
+        """Where a damaged file of that record is kept for inspection."""
+        path = self.path(kind, key)
+        return self.folder / DAMAGED / f"{FOLDERS[kind]}-{path.name}"
+
     def read(self, kind: str, key: str, arrays: bool | tuple[str, ...] = True) -> Record | None:
         """The record, or None if there is none or it was damaged (then it was set aside).
 
@@ -112,7 +117,7 @@ class Store:
                 try:
                     return _record(*unpack(handle, arrays), kind=kind, key=key)
                 except DamagedRecordError as damage:
-                    self._set_aside(path, os.fstat(handle.fileno()), str(damage))
+                    self._set_aside(path, self.aside(kind, key), os.fstat(handle.fileno()), str(damage))
         except FileNotFoundError:
             pass
         return None
@@ -137,8 +142,7 @@ class Store:
         root = self.path(kind, "00").parents[1]
         return {name.removesuffix(".npz") for name in _file_names(root) if name.endswith(".npz")}
 
-    def _set_aside(self, path: Path, seen: os.stat_result, what: str) -> None:
-        aside = self.folder / DAMAGED / f"{path.parent.parent.name}-{path.stem}.npz"
+    def _set_aside(self, path: Path, aside: Path, seen: os.stat_result, what: str) -> None:
         _log.warning("%s is damaged (%s); it will be computed again", path, what)
         try:
             now = path.stat()

@@ -1,0 +1,52 @@
+"""The fate of a planned point as a record, also when its job vanished and left nothing."""
+
+from __future__ import annotations
+
+import json
+from typing import Protocol
+
+from scission.records.schema import REASONS
+from scission.records.store import Record, Store
+
+
+class Planned(Protocol):
+    """What is asked of a point of the plan (see ``scission.plan``)."""
+
+    @property
+    def scan(self) -> str: ...
+    @property
+    def level(self) -> str: ...
+    @property
+    def number(self) -> int: ...
+    @property
+    def coordinate(self) -> tuple[float, ...]: ...
+    @property
+    def names(self) -> tuple[str, ...]: ...
+    @property
+    def key(self) -> str: ...
+
+
+def recall(store: Store, key: str, arrays: bool | tuple[str, ...] = False) -> Record:
+    """The record of a planned point; one of status ``lost`` if there is none that can be read.
+
+    ``attempts`` of a lost point is what the marker of its last start says, 0 if it never started.
+
+    Raises:
+        OSError: the file system does not give out a record that is there.
+    """
+    record = store.read("point", key, arrays)
+    if record is not None:
+        return record
+    reason = "damaged" if store.aside("point", key).exists() else "lost"
+    attempts = _marked_attempts(store, key)
+    return Record(key, "point", "lost", reason=reason, message=REASONS[reason], attempts=attempts)
+
+
+def _marked_attempts(store: Store, key: str) -> int:
+    try:
+        marker = json.loads((store.folder / "running" / f"{key}.json").read_text(encoding="utf-8"))
+        return int(marker["attempt"])
+    except FileNotFoundError:
+        return 0
+    except (ValueError, KeyError, TypeError):
+        return 1  # a marker that a kill cut short: it was started, at least
