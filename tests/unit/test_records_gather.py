@@ -38,7 +38,7 @@ def computed(point: Planned) -> Record:
     arrays = {"positions": np.full((2, 3), point.coordinate[0]), "orbital_energies": np.ones((1, 4))}
     if size:
         arrays["natural_occupations"] = np.linspace(2, 0, size)
-        arrays["mo_coeff"] = np.zeros((1, 4, 4))
+        arrays["mo_lowdin"] = np.zeros((1, 4, 4))
     return Record(
         point.key,
         "point",
@@ -98,7 +98,7 @@ def test_arrays_of_a_level_are_padded_with_nan(gathered):
         assert level.natural_occupations.dims == ("point", "orbital")
         assert level.natural_occupations.shape == (5, 5)
         assert np.isfinite(level.natural_occupations).sum("orbital").values.tolist() == [3, 4, 5, 0, 0]
-        assert "mo_coeff" not in level
+        assert "mo_lowdin" not in level
 
 
 def test_every_number_has_unit_and_meaning(gathered):

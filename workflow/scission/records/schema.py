@@ -76,7 +76,7 @@ ARRAYS = (
     Field("ci", "f8", "1", ("state", "alpha_string", "beta_string"), "CI vectors of the active space"),
 )
 
-TOO_LARGE_TO_GATHER = ("mo_coeff", "ci")
+TOO_LARGE_TO_GATHER = tuple(item.name for item in ARRAYS if {"ao", "alpha_string"} & set(item.shape))
 """Arrays that stay in the records of the references; all others go to campaign.h5."""
 
 POINT_TEXTS = (
