@@ -1,0 +1,93 @@
+"""Names: safe as parts of paths, distinct, and referring to something."""
+
+import re
+from collections.abc import Collection
+
+from scission.campaign.parts import Parts
+from scission.campaign.problems import Problem, one_of
+
+LONGEST_NAME = 64
+_SAFE = re.compile(r"[A-Za-z0-9_][A-Za-z0-9._-]*\Z")
+# Names that Windows keeps for devices, whatever follows the first dot: results are copied there too.
+_RESERVED = {"con", "prn", "aux", "nul"} | {f"{port}{n}" for port in ("com", "lpt") for n in range(10)}
+
+
+def check_names(parts: Parts) -> list[Problem]:
+    """Names of the campaign, molecules, levels and scans."""
+    name = parts.data.get("campaign")
+    problems = _unsafe(name, "campaign") if isinstance(name, str) else []
+    for section in ("molecules", "levels", "scans"):
+        seen: dict[str, str] = {}
+        for name in parts.declared(section):
+            path = f"{section}.{name}"
+            problems += _unsafe(name, path)
+            if name.lower() in seen:
+                rule = (
+                    f"differs from {seen[name.lower()]!r} only in case: some file systems take them for one"
+                )
+                problems.append(Problem(path, name, rule))
+            seen[name.lower()] = name
+    return problems
+
+
+def _unsafe(name: str, path: str) -> list[Problem]:
+    if not _SAFE.match(name):
+        rule = "is not a safe name: letters, digits, '.', '_' and '-', not beginning with '.' or '-'"
+        return [Problem(path, name, rule)]
+    if len(name) > LONGEST_NAME:
+        return [Problem(path, name, f"is longer than {LONGEST_NAME} characters")]
+    if name.endswith(".") or name.lower().split(".")[0] in _RESERVED:
+        return [Problem(path, name, "cannot be the name of a folder on every system: choose another")]
+    return []
+
+
+def check_references(parts: Parts) -> list[Problem]:
+    """Molecules and levels that scans and ``reference_level`` name are there, and named once."""
+    problems = []
+    molecules, levels = parts.declared("molecules"), parts.declared("levels")
+    for name, scan in parts.scans.items():
+        path = f"scans.{name}"
+        if scan.molecule not in molecules:
+            rule = f"is not a molecule of this campaign {one_of(molecules)}"
+            problems.append(Problem(f"{path}.molecule", scan.molecule, rule))
+        for place, level in enumerate(scan.levels):
+            if level not in levels:
+                rule = f"is not a level of this campaign {one_of(levels)}"
+                problems.append(Problem(f"{path}.levels[{place}]", level, rule))
+            elif level in scan.levels[:place]:
+                problems.append(Problem(f"{path}.levels[{place}]", level, "is listed twice"))
+    reference = parts.data.get("reference_level")
+    if isinstance(reference, str) and reference not in levels:
+        rule = f"is not a level of this campaign {one_of(levels)}"
+        problems.append(Problem("reference_level", reference, rule))
+    return problems
+
+
+def check_analysis(parts: Parts, diagnostic_names: Collection[str] | None) -> list[Problem]:
+    """Diagnostics by name (where the list of names is given), sources of thresholds, repeated entries."""
+    problems = []
+    diagnostics = parts.diagnostics
+    for name, threshold in diagnostics.thresholds.items():
+        path = f"diagnostics.thresholds.{name}"
+        problems += _unknown_diagnostic(name, path, diagnostic_names)
+        if not threshold.source.strip():
+            rule = "is no source: say where the value comes from"
+            problems.append(Problem(f"{path}.source", threshold.source, rule))
+    for place, name in enumerate(diagnostics.include):
+        problems += _unknown_diagnostic(name, f"diagnostics.include[{place}]", diagnostic_names)
+    problems += _repeated(diagnostics.include, "diagnostics.include")
+    return problems + _repeated(list(parts.fit.models), "fit.models")
+
+
+def _unknown_diagnostic(name: str, path: str, known: Collection[str] | None) -> list[Problem]:
+    if known is None or name in known:
+        return []
+    return [Problem(path, name, f"is not a diagnostic {one_of(known)}")]
+
+
+def _repeated(entries: list[str], path: str) -> list[Problem]:
+    return [
+        Problem(f"{path}[{place}]", entry, "is listed twice")
+        for place, entry in enumerate(entries)
+        if entry in entries[:place]
+    ]

@@ -1,0 +1,286 @@
+"""What a campaign file may say: one type per block, with a description of every key.
+
+The JSON schema in ``config/`` is made from these types.  They check each value by itself; what only shows
+when several parts are seen together (a bond to an atom that is not there, a basis without
+an element) is in the ``checks_`` modules.
+"""
+
+from pathlib import Path
+from typing import Annotated, Any, Literal
+
+import numpy as np
+from numpy.typing import NDArray
+from pydantic import BaseModel, BeforeValidator, ConfigDict, Discriminator, Field, PrivateAttr, Tag
+
+from scission.campaign.problems import CampaignError
+from scission.campaign.xyz import parse_atoms
+
+Reference = Literal["RHF", "UHF", "ROHF", "RKS", "UKS", "CASSCF"]
+Correlation = Literal["none", "MP2", "CCSD", "CCSD(T)", "FCI", "NEVPT2"]
+Model = Literal["morse", "extended-rydberg"]
+
+
+def _as_tuple(value: Any) -> Any:
+    return tuple(value) if isinstance(value, list) else value
+
+
+def _null_is_none(value: Any) -> Any:
+    return "none" if value is None else value
+
+
+def _kind(value: Any) -> str:
+    """Tag of a value that may be a mapping, a list or a text; tags are dropped from error paths."""
+    kinds = {dict: "<map>", list: "<list>", tuple: "<list>", str: "<text>", type(None): "<null>"}
+    return kinds.get(type(value), "<map>" if isinstance(value, BaseModel) else "<other>")
+
+
+AtomPair = Annotated[tuple[str, str], BeforeValidator(_as_tuple)]
+
+
+class Strict(BaseModel):
+    """No unknown keys, no guessing of types, no infinite numbers."""
+
+    model_config = ConfigDict(
+        extra="forbid", strict=True, frozen=True, allow_inf_nan=False, use_attribute_docstrings=False
+    )
+
+
+class Molecule(Strict):
+    """A molecule: its charge, its spin and where its atoms are."""
+
+    charge: int = Field(ge=-100, le=100, description="Total charge, in elementary charges.", examples=[0])
+    multiplicity: int = Field(
+        ge=1, le=100, description="Spin multiplicity 2S+1: 1 singlet, 2 doublet, 3 triplet.", examples=[1]
+    )
+    unit: Literal["angstrom", "bohr"] = Field(
+        "angstrom",
+        description="Unit of the coordinates and of the lengths of its scans (xyz files: angstrom).",
+    )
+    atoms: str | None = Field(
+        None,
+        description="One atom a line: element x y z. Either this or xyz.",
+        examples=["H 0.0 0.0 0.0\nF 0.0 0.0 0.917\n"],
+    )
+    xyz: str | None = Field(
+        None,
+        description="Path of an xyz file, relative to the campaign file. Either this or atoms.",
+        examples=["geometries/water.xyz"],
+    )
+    _symbols: tuple[str, ...] = PrivateAttr(default=())
+    _positions: NDArray[np.float64] | None = PrivateAttr(default=None)
+
+    def place(self, symbols: tuple[str, ...], positions: NDArray[np.float64]) -> None:
+        """Set the atoms: element symbols and positions of shape (n_atoms, 3), bohr."""
+        positions.setflags(write=False)
+        self._symbols, self._positions = symbols, positions
+
+    @property
+    def symbols(self) -> tuple[str, ...]:
+        """Element symbols in the order given."""
+        self._place_from_text()
+        return self._symbols
+
+    @property
+    def positions(self) -> NDArray[np.float64]:
+        """Positions, shape (n_atoms, 3), bohr, read only."""
+        self._place_from_text()
+        assert self._positions is not None
+        return self._positions
+
+    def _place_from_text(self) -> None:
+        if self._positions is None:
+            symbols, positions, problems = parse_atoms(self.atoms or "", self.unit)
+            if problems:
+                raise CampaignError(problems)
+            self.place(symbols, positions)
+
+
+class ActiveSpace(Strict):
+    """Active space of a CASSCF level."""
+
+    electrons: int = Field(ge=1, description="Number of active electrons.", examples=[2])
+    orbitals: int = Field(ge=1, description="Number of active orbitals.", examples=[2])
+    atomic_orbitals: list[str] | None = Field(
+        None,
+        min_length=1,
+        description="Atomic orbitals that the active orbitals are picked for, e.g. 'N 2p' or 'N1 2p'; "
+        "null: chosen automatically.",
+        examples=[["N1 2p", "N2 2p"]],
+    )
+
+
+class Level(Strict):
+    """A level of theory: reference, correlation method and basis."""
+
+    reference: Reference = Field(
+        description="Reference wavefunction or Kohn-Sham determinant.", examples=["RHF"]
+    )
+    functional: str | None = Field(
+        None, description="Density functional, for RKS and UKS only.", examples=["B3LYP", "PBE0", "PBE,PBE"]
+    )
+    correlation: Annotated[Correlation, BeforeValidator(_null_is_none)] = Field(
+        "none", description="Correlation method on top of the reference; NEVPT2 on CASSCF only."
+    )
+    basis: Annotated[
+        Annotated[str, Tag("<text>")] | Annotated[dict[str, str], Field(min_length=1), Tag("<map>")],
+        Discriminator(
+            _kind,
+            custom_error_type="basis",
+            custom_error_message="must be the name of a basis, or a mapping element: basis",
+        ),
+    ] = Field(
+        description="Basis by name, or a mapping from element (and 'default') to name.",
+        examples=["cc-pVDZ", {"H": "cc-pVDZ", "default": "aug-cc-pVDZ"}],
+    )
+    frozen_core: bool = Field(True, description="Leave core electrons out of the correlation treatment.")
+    active_space: Annotated[
+        Annotated[Literal["auto"], Tag("<text>")]
+        | Annotated[ActiveSpace, Tag("<map>")]
+        | Annotated[None, Tag("<null>")],
+        Discriminator(
+            _kind,
+            custom_error_type="active_space",
+            custom_error_message="must be auto or {electrons: ..., orbitals: ...}",
+        ),
+    ] = Field(
+        None,
+        description="Active space, for CASSCF only and needed there; auto: valence orbitals of the stretched bond.",
+        examples=["auto", {"electrons": 2, "orbitals": 2}],
+    )
+    states: int = Field(1, ge=1, le=20, description="Number of states averaged with equal weights (CASSCF).")
+    follow: Literal["anchor", "lowest"] | None = Field(
+        None,
+        description="Stay on the state of the anchor geometry, or take the lowest solution at each point; "
+        "null: lowest for UHF and UKS, anchor for the others.",
+    )
+
+    @property
+    def resolved_follow(self) -> Literal["anchor", "lowest"]:
+        """``follow``, or the default of the reference."""
+        return self.follow or ("lowest" if self.reference in ("UHF", "UKS") else "anchor")
+
+    @property
+    def correlates_valence_only(self) -> bool:
+        """True where core electrons are left out: the key matters only with a correlation method."""
+        return self.frozen_core and self.correlation != "none"
+
+    def basis_of(self, symbol: str) -> str | None:
+        """Name of the basis for an element, None where the mapping has none."""
+        if isinstance(self.basis, str):
+            return self.basis
+        return self.basis.get(symbol, self.basis.get("default"))
+
+
+class Grid(Strict):
+    """Evenly or gradually spaced lengths."""
+
+    from_: float = Field(
+        alias="from", gt=0, description="First length, in the molecule's unit.", examples=[0.7]
+    )
+    to: float = Field(gt=0, description="Last length, in the molecule's unit.", examples=[10.0])
+    points: int = Field(ge=1, description="Number of lengths, both ends included.", examples=[40])
+    spacing: Literal["even", "graded"] = Field("even", description="even, or graded: dense near the minimum.")
+
+
+class Stretch(Strict):
+    """One bond is stretched; the atoms on one side of it move as a rigid body."""
+
+    bond: AtomPair = Field(
+        description="The two atoms, each as element and number counted from 1 in the order given.",
+        examples=[["O1", "H2"]],
+    )
+    lengths: Annotated[
+        Annotated[Grid, Tag("<map>")] | Annotated[list[float], Field(min_length=1), Tag("<list>")],
+        Discriminator(
+            _kind,
+            custom_error_type="lengths",
+            custom_error_message="must be a list of lengths or {from: ..., to: ..., points: ...}",
+        ),
+    ] = Field(
+        description="Bond lengths, in the molecule's unit: a grid, or an increasing list.",
+        examples=[{"from": 0.7, "to": 10.0, "points": 40, "spacing": "graded"}, [0.9, 1.0, 1.1]],
+    )
+    move: list[str] | None = Field(
+        None,
+        min_length=1,
+        description="Atoms that move; null: the atoms bonded to the second atom of the bond.",
+        examples=[["H2"]],
+    )
+
+
+class Scan(Strict):
+    """One molecule taken along one coordinate at one or more levels."""
+
+    molecule: str = Field(description="Name of a molecule of this campaign.", examples=["water"])
+    levels: list[str] = Field(
+        min_length=1, description="Names of levels of this campaign.", examples=[["cc"]]
+    )
+    stretch: Stretch | None = Field(None, description="The coordinate: a bond that is stretched.")
+
+
+class Threshold(Strict):
+    """A threshold of your own for one diagnostic."""
+
+    value: float = Field(description="Value at which the diagnostic counts as over.", examples=[0.02])
+    source: str = Field(
+        min_length=1,
+        description="Where the value comes from: a publication or your own study.",
+        examples=["..."],
+    )
+
+
+class Diagnostics(Strict):
+    """Overrides of thresholds, and diagnostics beyond the standard ones."""
+
+    thresholds: dict[str, Threshold] = Field(
+        default_factory=dict, description="Diagnostic name: {value, source}; the source is required."
+    )
+    include: list[str] = Field(
+        default_factory=list, description="Further diagnostics to compute, by name; some cost extra time."
+    )
+
+
+class Fit(Strict):
+    """How curves are fitted."""
+
+    models: list[Model] = Field(
+        default_factory=lambda: ["morse", "extended-rydberg"],
+        min_length=1,
+        description="Curve models to fit and to choose from.",
+    )
+
+
+class Campaign(Strict):
+    """A campaign of bond scans: molecules, levels of theory, and the scans that combine them."""
+
+    name: str = Field(
+        alias="campaign",
+        description="Name of the campaign and of its folder under results/.",
+        examples=["water-bond"],
+    )
+    molecules: dict[str, Molecule] = Field(min_length=1, description="Molecules by name.")
+    levels: dict[str, Level] = Field(min_length=1, description="Levels of theory by name.")
+    scans: dict[str, Scan] = Field(min_length=1, description="Scans by name.")
+    diagnostics: Diagnostics = Field(
+        default_factory=Diagnostics, description="Overrides of thresholds, each with a source."
+    )
+    fit: Fit = Field(default_factory=Fit, description="How curves are fitted.")
+    reference_level: str | None = Field(
+        None, description="The level the others are compared with.", examples=["fci"]
+    )
+    _source_text: str = PrivateAttr(default="")
+    _directory: Path = PrivateAttr(default_factory=Path)
+
+    @property
+    def source_text(self) -> str:
+        """The campaign file as given."""
+        return self._source_text
+
+    @property
+    def directory(self) -> Path:
+        """The folder the campaign file lies in."""
+        return self._directory
+
+    def keep_source(self, text: str, directory: Path) -> None:
+        """Remember the file as given and where it lies."""
+        self._source_text, self._directory = text, directory
