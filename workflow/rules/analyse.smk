@@ -1,0 +1,18 @@
+rule analyse:
+    """Diagnostics against thresholds, onsets, fits; the tables and the list of failures."""
+    input:
+        "campaign.h5",
+    output:
+        "tables/points.csv",
+        "failures.csv",
+    log:
+        "logs/analyse.log",
+    benchmark:
+        "benchmarks/analyse.tsv"
+    resources:
+        mem_mb=4000,
+        runtime=30,
+    params:
+        physics_version=PLAN["physics_version"],
+    shell:
+        f"{PYTHON} {SCRIPTS}/analyse.py --results . > {{log}} 2>&1"

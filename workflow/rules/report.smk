@@ -1,0 +1,18 @@
+rule report:
+    """Pictures of all scans and the page to look at."""
+    input:
+        "tables/points.csv",
+        "failures.csv",
+    output:
+        "report.html",
+    log:
+        "logs/report.log",
+    benchmark:
+        "benchmarks/report.tsv"
+    resources:
+        mem_mb=4000,
+        runtime=30,
+    params:
+        physics_version=PLAN["physics_version"],
+    shell:
+        f"{PYTHON} {SCRIPTS}/report.py --results . > {{log}} 2>&1"

@@ -1,0 +1,123 @@
+"""The workflow engine as a command: how it is called, where, and with what around it."""
+
+from __future__ import annotations
+
+import os
+import shlex
+import subprocess
+import sys
+from collections.abc import Callable, Sequence
+from dataclasses import dataclass
+from pathlib import Path
+
+import psutil
+
+from scission.execution.layout import PROJECT
+from scission.execution.processes import MEGABYTE
+
+ATTEMPTS = 2
+"""How often the engine starts a job at most; the profiles' ``retries`` is one less."""
+_MEMORY_SHARE = 0.9
+
+
+@dataclass(frozen=True)
+class Command:
+    """One call of the engine for a campaign file."""
+
+    campaign_file: Path
+    results: Path
+    profile: str = "local"
+    settings: tuple[str, ...] = ()
+    extra: tuple[str, ...] = ()
+
+    def words(self) -> list[str]:
+        """Return the command as a list of words."""
+        config = [f"results={self.results}", *self.settings]
+        return [
+            *(sys.executable, "-m", "snakemake"),
+            *("--snakefile", str(PROJECT / "Snakefile")),
+            *("--profile", str(profile_folder(self.profile))),
+            *("--configfile", str(self.campaign_file)),
+            *("--config", *config),
+            "--rerun-incomplete",
+            *self._memory(),
+            *self.extra,
+        ]
+
+    def _memory(self) -> list[str]:
+        own = any(word.split("=")[0] in ("--resources", "--res") for word in self.extra)
+        if self.profile != "local" or own:
+            return []
+        return ["--resources", f"mem_mb={int(_MEMORY_SHARE * psutil.virtual_memory().total / MEGABYTE)}"]
+
+    def __str__(self) -> str:
+        return shlex.join(self.words())
+
+
+def profile_folder(name: str) -> Path:
+    """Return the folder of a profile: one of the project's by name, or any by its path.
+
+    Raises:
+        FileNotFoundError: neither is there.
+    """
+    own = PROJECT / "config" / "profiles" / name
+    for folder in (own, Path(name).expanduser().absolute()):
+        if (folder / "config.yaml").is_file():
+            return folder
+    known = sorted(p.parent.name for p in (PROJECT / "config" / "profiles").glob("*/config.yaml"))
+    raise FileNotFoundError(
+        f"there is no profile {name!r}; known are {', '.join(known)}, or give a folder's path"
+    )
+
+
+def environment() -> dict[str, str]:
+    """Return the environment for the engine: all caches inside the project, one thread a process."""
+    cache = PROJECT / ".cache"
+    inside = {"XDG_CACHE_HOME": str(cache), "MPLCONFIGDIR": str(cache / "matplotlib")}
+    return dict(os.environ) | inside | {"PYTHONUNBUFFERED": "1"}
+
+
+def call(
+    command: Command,
+    log: Path | None,
+    started: Callable[[int], None] = lambda pid: None,
+    tick: Callable[[], None] = lambda: None,
+    tick_s: float = 0.5,
+) -> int:
+    """Run the engine to its end and return its exit status.
+
+    Args:
+        log: file for what it says; None lets it speak to the terminal.
+        started: told the number of its process.
+        tick: called about every ``tick_s`` seconds meanwhile.
+    """
+    if log is None:
+        return _wait(subprocess.Popen(command.words(), env=environment()), started, tick, tick_s)
+    log.parent.mkdir(parents=True, exist_ok=True)
+    with log.open("wb") as out:
+        process = subprocess.Popen(command.words(), env=environment(), stdout=out, stderr=subprocess.STDOUT)
+        return _wait(process, started, tick, tick_s)
+
+
+def _wait(
+    process: subprocess.Popen[bytes], started: Callable[[int], None], tick: Callable[[], None], tick_s: float
+) -> int:
+    started(process.pid)
+    while True:
+        try:
+            return process.wait(timeout=tick_s)
+        except subprocess.TimeoutExpired:
+            tick()
+        except KeyboardInterrupt:
+            print("\nstopping: waiting for the engine to end its jobs", file=sys.stderr, flush=True)
+
+
+INFORMATIVE = frozenset(
+    ["-n", "--dry-run", "--dryrun", "-S", "--summary", "-D", "--detailed-summary", "--dag", "--rulegraph", "--filegraph", "--d3dag", "--lint", "-l", "--list", "--list-rules", "--lt", "--list-target-rules", "--list-changes", "--lc", "--unlock", "--report", "--archive", "-v", "--version", "-h", "--help", "--touch", "-t", "--delete-all-output", "--cleanup-metadata", "--cm", "--lu", "--list-untracked"]
+)
+"""Options that make the engine tell or tidy something instead of computing."""
+
+
+def is_informative(extra: Sequence[str]) -> bool:
+    """Whether the engine is asked to tell something, which then belongs on the terminal."""
+    return any(word.split("=")[0] in INFORMATIVE for word in extra)
