@@ -45,7 +45,7 @@ def computed(point: Planned) -> Record:
         "converged",
         scalars={"energy": -point.coordinate[0], "n_basis": 4},
         diagnostics={"t1": 0.01 * point.number} if point.level == "cc" else {"luno": 0.1},
-        inputs={"symbols": ["O", "H"]},
+        inputs={"molecule": {"symbols": ["O", "H"]}},
         arrays=arrays,
     )
 
@@ -57,7 +57,7 @@ def gathered(tmp_path):
     for point in points[:-2]:
         store.write(computed(point))
     failed = Record(
-        points[-2].key, "point", "failed", reason="raised", message="no", scalars={"n_basis": float("nan")}
+        points[-2].key, "point", "failed", reason="raised", message="no", scalars={"n_basis": float("nan"), "energy": -99.0}
     )
     store.write(failed)
     out = tmp_path / "campaign.h5"

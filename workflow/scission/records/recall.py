@@ -8,6 +8,8 @@ from typing import Protocol
 from scission.records.schema import REASONS
 from scission.records.store import Record, Store
 
+_NEEDS_CONVERGENCE = ("energy", "energy_reference", "energy_correlation", "energy_triples")
+
 
 class Planned(Protocol):
     """What is asked of a point of the plan (see ``scission.plan``)."""
@@ -40,6 +42,16 @@ def recall(store: Store, key: str, arrays: bool | tuple[str, ...] = False) -> Re
     reason = "damaged" if store.aside("point", key).exists() else "lost"
     attempts = _marked_attempts(store, key)
     return Record(key, "point", "lost", reason=reason, message=REASONS[reason], attempts=attempts)
+
+
+def settled_scalars(record: Record) -> dict[str, float]:
+    """Scalars fit for a table: a calculation that did not converge has a cost but no energy.
+
+    The last energy of its iterations stays in the record and in its message.
+    """
+    if record.status == "converged":
+        return dict(record.scalars)
+    return {name: value for name, value in record.scalars.items() if name not in _NEEDS_CONVERGENCE}
 
 
 def _marked_attempts(store: Store, key: str) -> int:

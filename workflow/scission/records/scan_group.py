@@ -10,7 +10,7 @@ import h5py
 import numpy as np
 
 from scission.records.ragged import RaggedArray
-from scission.records.recall import Planned
+from scission.records.recall import Planned, settled_scalars
 from scission.records.schema import ARRAYS, POINT_TEXTS, SCALARS, TOO_LARGE_TO_GATHER, Field
 from scission.records.store import Record
 
@@ -67,7 +67,7 @@ class ScanGroup:
         """Take over the numbers and words of one point."""
         column = self._column[point.number]
         place = self._row[point.level], column
-        for name, value in (record.scalars | {"attempts": record.attempts}).items():
+        for name, value in (settled_scalars(record) | {"attempts": record.attempts}).items():
             if math.isfinite(value):  # an integer array has no place for NaN
                 self._numbers[name][place] = value
         for name, value in record.diagnostics.items():
@@ -81,8 +81,8 @@ class ScanGroup:
         for name, array in record.arrays.items():
             if name == "positions":
                 self._positions.put(column, array)
-                self._symbols = self._symbols or [str(item) for item in record.inputs.get("symbols", [])]
-            elif name in _RAGGED:
+                self._symbols = self._symbols or symbols_of(record)
+            elif name in _RAGGED and record.status == "converged":
                 if (level, name) not in self._ragged:
                     home = self._group.require_group(f"levels/{level}")
                     self._ragged[level, name] = RaggedArray(home, name, len(self._grid))
@@ -135,6 +135,12 @@ class ScanGroup:
                 scale(home, label, np.arange(1, size + 1), f"number of the {name}, from 1")
             axes.append(home[label])
         return axes
+
+
+def symbols_of(record: Record) -> list[str]:
+    """Element symbols that the record's inputs state, under ``symbols`` or ``molecule.symbols``."""
+    inputs = record.inputs
+    return [str(item) for item in inputs.get("symbols") or inputs.get("molecule", {}).get("symbols", [])]
 
 
 def scale(group: h5py.Group, name: str, values: np.ndarray, meaning: str) -> None:

@@ -73,6 +73,9 @@ ARRAYS = (
         "orbitals of the reference in symmetrically orthogonalised basis functions, S^1/2 C",
     ),
     Field("mo_occ", "f8", "1", ("spin", "mo"), "orbital occupations of the reference"),
+    Field(
+        "active", "i8", "1", ("part",), "inactive orbitals, active orbitals and active electrons of a CASSCF"
+    ),
     Field("ci", "f8", "1", ("state", "alpha_string", "beta_string"), "CI vectors of the active space"),
 )
 
