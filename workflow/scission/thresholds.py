@@ -59,7 +59,10 @@ class Override:
 Thresholds = Mapping[str, tuple[Threshold, ...]]
 
 _PULAY = "Pulay and Hamilton, J. Chem. Phys. 88, 4926 (1988): fractional if 0.02 < n < 1.98"
-_TZT = "cf. M diagnostic, large above 0.10: Tishchenko, Zheng and Truhlar, J. Chem. Theory Comput. 4, 1208 (2008)"
+_TZT = (
+    "cf. the M diagnostic, large above 0.10: "
+    "Tishchenko, Zheng and Truhlar, J. Chem. Theory Comput. 4, 1208 (2008)"
+)
 _TWICE = f"{OWN}: twice the threshold"
 _PAIR = f"{OWN}: two electrons in two orbitals reach it where C0^2 falls to 0.90"
 
@@ -146,7 +149,7 @@ THRESHOLDS: dict[str, tuple[Threshold, ...]] = {
     ),
     "c0_squared": (
         Threshold(
-            "c0_squared", 0.90, "below", "CASSCF, weight of the leading configuration; falls with the space's size",
+            "c0_squared", 0.90, "below", "CASSCF leading weight; falls as the space grows",
             "rule of the trade; see Sears and Sherrill, J. Phys. Chem. A 112, 3466 (2008); "
             "Jiang, DeYonker and Wilson, J. Chem. Theory Comput. 8, 460 (2012)", MEMORY,
             strong=0.80, strong_source=OWN,

@@ -48,7 +48,7 @@ STEP = 0.1
 
 @dataclass(frozen=True)
 class Well:
-    """A minimum: ``r_e`` (bohr), ``bottom`` and ``depth`` (hartree), derivatives f2 to f4 (hartree/bohr^k)."""
+    """A minimum: ``r_e`` (bohr), ``bottom`` and ``depth`` (hartree), f2 to f4 (hartree/bohr^k)."""
 
     r_e: float
     bottom: float

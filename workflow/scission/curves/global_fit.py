@@ -5,6 +5,7 @@ minimum, and the constants come from the well.  Each residual is divided by 1 + 
 s a fifth of the highest outer energy of the fit: full weight at the bottom, a sixth at the far end.
 Standard errors come from the covariance of the fit, scaled by its residuals: they say how
 well the points determine the parameters of this model, not how well the model suits the molecule.
+Only D_e carries more: the part of it beyond the outermost point counts as error in full.
 """
 
 from collections.abc import Callable, Mapping
@@ -145,13 +146,18 @@ def _judge_depth(
     reference: float,
     index: np.ndarray,
 ) -> str:
-    """Say how much of D_e the points cover; withdraw a D_e that they leave undetermined."""
-    if not errors["D_e"] < UNDETERMINED * values["D_e"]:
-        del values["D_e"], errors["D_e"]
-        return "fitted; D_e is left out: the points do not reach far enough to determine it"
+    """Say how much of D_e the points cover, and count the part they do not cover as its error.
+
+    The covariance knows nothing of the tail that no point has seen.  A D_e left with an error
+    above half of itself is withdrawn.
+    """
     far = float(curve.energy[index][-1] - reference - parameters["bottom"])
     coverage = far / parameters["depth"]
     values["D_e_coverage"] = coverage
+    errors["D_e"] = float(np.hypot(errors["D_e"], (1.0 - coverage) * values["D_e"]))
+    if not errors["D_e"] < UNDETERMINED * values["D_e"]:
+        del values["D_e"], errors["D_e"]
+        return f"fitted; no D_e: the outermost point used reaches only {coverage:.1%} of the fitted depth"
     if coverage >= COVERED:
         return f"fitted; the far limit is covered: the outermost point used lies at {coverage:.1%} of D_e"
     return f"fitted; D_e is extrapolated: the outermost point used lies at {coverage:.1%} of it"

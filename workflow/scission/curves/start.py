@@ -36,7 +36,7 @@ def best_linear(
     found = []
     for trial in trials:
         matrix = columns(float(trial))
-        coefficients = np.linalg.lstsq(matrix, e, rcond=None)[0]
+        coefficients = np.asarray(np.linalg.lstsq(matrix, e, rcond=None)[0], dtype=np.float64)
         misfit = float(np.sum((matrix @ coefficients - e) ** 2))
         found.append((not sensible(coefficients), misfit, float(trial), coefficients))
     _, _, trial, coefficients = min(found, key=lambda item: item[:2])

@@ -67,13 +67,17 @@ def _from_the_start(x: FloatArray) -> Onset:
 
 def _crossing(x: FloatArray, y: FloatArray, i: int, bound: float, rises: bool, missing: FloatArray) -> Onset:
     lower, upper = float(x[i]), float(x[i + 1])
-    curve = PchipInterpolator(x, y - bound)
-    ends = y[i] - bound, y[i + 1] - bound
-    place = (
-        float(brentq(curve, lower, upper)) if ends[0] * ends[1] < 0.0 else (lower, upper)[int(ends[1] == 0.0)]
-    )
     note = "crosses the threshold" if rises else "falls back within the threshold"
     gaps = int(np.sum((missing > lower) & (missing < upper)))
     if gaps:
         note += f"; {gaps} point{'s' if gaps > 1 else ''} without a value inside the bracket"
-    return Onset(place, lower, upper, note)
+    return Onset(_root(x, y - bound, lower, upper), lower, upper, note)
+
+
+def _root(x: FloatArray, height: FloatArray, lower: float, upper: float) -> float:
+    """Root of the interpolated height in a bracket; an end that touches zero is the root itself."""
+    curve = PchipInterpolator(x, height)
+    ends = {lower: float(curve(lower)), upper: float(curve(upper))}
+    if ends[lower] * ends[upper] < 0.0:
+        return float(brentq(lambda place: float(curve(place)), lower, upper))
+    return min(ends, key=lambda place: abs(ends[place]))
