@@ -8,7 +8,7 @@ from snakemake.exceptions import WorkflowError
 
 from scission.execution.engine import ATTEMPTS
 from scission.execution.layout import PROJECT
-from scission.execution.planning import PlanMissingError, refresh
+from scission.execution.planning import PlanMissingError, plan_options, refresh
 
 
 def read_plan():
@@ -17,8 +17,8 @@ def read_plan():
         raise WorkflowError("name a campaign: --configfile CAMPAIGN.yaml")
     campaign_file = Path(workflow.configfiles[-1])
     results = Path(config.get("results") or PROJECT / "results").absolute()
-    options = {key: config[key] for key in ("block_seconds",) if key in config}
     try:
+        options = plan_options(config)
         return refresh(
             config, campaign_file, results, options, may_write=workflow.is_main_process
         )

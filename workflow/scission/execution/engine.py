@@ -11,6 +11,7 @@ from dataclasses import dataclass
 from pathlib import Path
 
 import psutil
+import yaml
 
 from scission.execution.layout import PROJECT
 from scission.execution.processes import MEGABYTE
@@ -22,7 +23,7 @@ _MEMORY_SHARE = 0.9
 
 @dataclass(frozen=True)
 class Command:
-    """One call of the engine for a campaign file."""
+    """One call of the engine for a campaign file; ``extra`` are a person's own options for it."""
 
     campaign_file: Path
     results: Path
@@ -31,18 +32,29 @@ class Command:
     extra: tuple[str, ...] = ()
 
     def words(self) -> list[str]:
-        """Return the command as a list of words."""
-        config = [f"results={self.results}", *self.settings]
+        """Return the command as a list of words.
+
+        Raises:
+            FileNotFoundError: there is no such profile.
+        """
         return [
             *(sys.executable, "-m", "snakemake"),
             *("--snakefile", str(PROJECT / "Snakefile")),
             *("--profile", str(profile_folder(self.profile))),
             *("--configfile", str(self.campaign_file)),
-            *("--config", *config),
+            *("--config", f"results={self.results}", *(f"{k}={v}" for k, v in self.config().items())),
             "--rerun-incomplete",
             *self._memory(),
-            *self.extra,
+            *_without_config(self.extra)[0],
         ]
+
+    def config(self) -> dict[str, str]:
+        """Return the settings of the profile, of the caller and of a person's --config, later ones winning.
+
+        They are merged here because the engine takes only the last --config it meets.
+        """
+        own = _profile_config(profile_folder(self.profile))
+        return own | dict(_pair(word) for word in [*self.settings, *_without_config(self.extra)[1]])
 
     def _memory(self) -> list[str]:
         own = any(word.split("=")[0] in ("--resources", "--res") for word in self.extra)
@@ -52,6 +64,33 @@ class Command:
 
     def __str__(self) -> str:
         return shlex.join(self.words())
+
+
+def _pair(word: str) -> tuple[str, str]:
+    key, _, value = word.partition("=")
+    return key, value
+
+
+def _profile_config(folder: Path) -> dict[str, str]:
+    content = yaml.safe_load((folder / "config.yaml").read_text(encoding="utf-8")) or {}
+    entries = content.get("config") or []
+    return dict(entries) if isinstance(entries, dict) else dict(_pair(word) for word in entries)
+
+
+def _without_config(extra: Sequence[str]) -> tuple[list[str], list[str]]:
+    """Split a person's options into all others and the values given to --config."""
+    others: list[str] = []
+    values: list[str] = []
+    taking = False
+    for word in extra:
+        if word in ("--config", "-C"):
+            taking = True
+        elif taking and not word.startswith("-"):
+            values.append(word)
+        else:
+            taking = False
+            others.append(word)
+    return others, values
 
 
 def profile_folder(name: str) -> Path:
@@ -80,7 +119,7 @@ def environment() -> dict[str, str]:
 def call(
     command: Command,
     log: Path | None,
-    started: Callable[[int], None] = lambda pid: None,
+    started: Callable[[int], None] = lambda _: None,
     tick: Callable[[], None] = lambda: None,
     tick_s: float = 0.5,
 ) -> int:
@@ -99,22 +138,31 @@ def call(
         return _wait(process, started, tick, tick_s)
 
 
+INTERRUPTED = 130
+
+
 def _wait(
     process: subprocess.Popen[bytes], started: Callable[[int], None], tick: Callable[[], None], tick_s: float
 ) -> int:
     started(process.pid)
+    interrupted = False
     while True:
         try:
-            return process.wait(timeout=tick_s)
+            code = process.wait(timeout=tick_s)
+            return INTERRUPTED if interrupted else code
         except subprocess.TimeoutExpired:
             tick()
         except KeyboardInterrupt:
+            interrupted = True
             print("\nstopping: waiting for the engine to end its jobs", file=sys.stderr, flush=True)
 
 
-INFORMATIVE = frozenset(
-    ["-n", "--dry-run", "--dryrun", "-S", "--summary", "-D", "--detailed-summary", "--dag", "--rulegraph", "--filegraph", "--d3dag", "--lint", "-l", "--list", "--list-rules", "--lt", "--list-target-rules", "--list-changes", "--lc", "--unlock", "--report", "--archive", "-v", "--version", "-h", "--help", "--touch", "-t", "--delete-all-output", "--cleanup-metadata", "--cm", "--lu", "--list-untracked"]
-)
+_TELLING = """
+-n --dry-run --dryrun -S --summary -D --detailed-summary --dag --rulegraph --filegraph --d3dag --lint
+-l --list --list-rules --lt --list-target-rules --lc --list-changes --lu --list-untracked --unlock
+-t --touch --report --archive --cm --cleanup-metadata --delete-all-output -v --version -h --help
+"""
+INFORMATIVE = frozenset(_TELLING.split())
 """Options that make the engine tell or tidy something instead of computing."""
 
 

@@ -118,7 +118,8 @@ class Guard:
 
     def _supervise(self, task: dict[str, Any], budget: Budget) -> dict[str, Any]:
         child = self._child
-        assert child is not None and child.stdin is not None
+        assert child is not None
+        assert child.stdin is not None
         deadline = time.monotonic() + budget.wall_s
         peak = 0.0
         try:

@@ -9,9 +9,11 @@ from __future__ import annotations
 import csv
 import hashlib
 import io
-from collections.abc import Iterable
+from collections.abc import Iterable, Mapping
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
+
+import yaml
 
 from scission.execution.layout import Layout, read_json, write_json
 from scission.records.atomic import write_whole
@@ -39,12 +41,35 @@ def fingerprint(campaign_file: Path, xyz_files: Iterable[Path], options: dict[st
     return state.hexdigest()
 
 
+def read_config(campaign_file: Path) -> dict[str, Any]:
+    """Return the campaign as plain data, as the engine reads it; for files that have been checked."""
+    data = yaml.safe_load(campaign_file.read_bytes())
+    return data if isinstance(data, dict) else {}
+
+
 def xyz_files(config: dict[str, Any], campaign_file: Path) -> list[Path]:
     """Return the xyz files that a campaign, as read by the engine, names."""
     molecules = config.get("molecules")
     entries = molecules.values() if isinstance(molecules, dict) else []
     names = [entry.get("xyz") for entry in entries if isinstance(entry, dict)]
     return [campaign_file.parent / name for name in names if isinstance(name, str)]
+
+
+def plan_options(config: Mapping[str, Any]) -> dict[str, Any]:
+    """Return what besides the campaign file decides the plan, out of the engine's settings.
+
+    Raises:
+        ValueError: a setting that is not a positive number.
+    """
+    if "block_seconds" not in config:
+        return {}
+    try:
+        seconds = float(config["block_seconds"])
+    except (TypeError, ValueError):
+        seconds = 0.0
+    if not 0.0 < seconds < float("inf"):
+        raise ValueError(f"setting block_seconds: {config['block_seconds']!r} is not a positive number")
+    return {"block_seconds": seconds}
 
 
 def current_index(layout: Layout, stamp: str) -> dict[str, Any] | None:
@@ -96,11 +121,13 @@ def make(
         CampaignError: the campaign file is wrong; holds every problem.
     """
     from scission.campaign import load_campaign
+    from scission.diagnostics import DIAGNOSTICS
 
-    campaign = load_campaign(campaign_file)
+    campaign = load_campaign(campaign_file, DIAGNOSTICS)
     layout = Layout(results / campaign.name)
     write(expand(campaign, options), layout)
-    write_json(layout.plan / "stamp.json", {"stamp": stamp})
+    made_from = {"stamp": stamp, "source": str(campaign_file.absolute()), "options": options}
+    write_json(layout.plan / "stamp.json", made_from)
     index = read_json(layout.plan / "plan.json")
     assert index is not None
     return layout, index
@@ -111,7 +138,7 @@ def expand(campaign: Campaign, options: dict[str, Any]) -> Plan:
     from scission.plan import make_plan
 
     block = options.get("block_seconds")
-    return make_plan(campaign) if block is None else make_plan(campaign, block_seconds=float(block))
+    return make_plan(campaign) if block is None else make_plan(campaign, block_seconds=block)
 
 
 def write(plan: Plan, layout: Layout) -> None:

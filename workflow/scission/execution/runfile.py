@@ -99,23 +99,29 @@ def _who(campaign: str, left: dict[str, Any]) -> str:
     return f"campaign {campaign!r} is being run already, by {who}; `scission status` shows how far it is"
 
 
-def settle_earlier_run(layout: Layout, left: dict[str, Any], tell: Callable[[str], None]) -> None:
-    """Wait until nothing of an earlier, killed run is at work any more, then free the engine's lock."""
+def settle_earlier_run(
+    layout: Layout, left: dict[str, Any], tell: Callable[[str], None], tick: Callable[[], None] = lambda: None
+) -> None:
+    """Wait until nothing of an earlier, killed run is at work any more, then free the engine's lock.
+
+    What its jobs compute meanwhile is kept, so nothing is lost and nothing computed twice.
+    """
     engine = left.get("engine") or {}
     if engine and is_alive(engine):
         tell(
             f"an earlier run was killed, its engine (process {engine['pid']}) is still at work: following it"
         )
-    _wait_while(lambda: bool(engine) and is_alive(engine))
+        _wait_while(lambda: is_alive(engine), tick)
     jobs = live_workers(layout)
     if jobs:
-        tell(f"waiting for {len(jobs)} worker(s) of an earlier run: {', '.join(jobs)}")
-    _wait_while(lambda: bool(live_workers(layout)))
+        tell(f"an earlier run was killed; waiting for what it left at work: {', '.join(jobs)}")
+        _wait_while(lambda: bool(live_workers(layout)), tick)
     _unlock(layout.folder / ".snakemake" / "locks")
 
 
-def _wait_while(condition: Callable[[], bool], poll_s: float = 0.5) -> None:
+def _wait_while(condition: Callable[[], bool], tick: Callable[[], None], poll_s: float = 0.5) -> None:
     while condition():
+        tick()
         time.sleep(poll_s)
 
 

@@ -18,6 +18,7 @@ from scission.execution.ledger import Ledger, fulfilled, record_kind
 from scission.execution.markers import claim, clear_running, earlier_starts, now, pending_request
 from scission.execution.outcomes import RESOURCE_REASONS, Outcome, write_failure
 from scission.execution.processes import identity
+from scission.execution.publish import publish
 from scission.records.store import Record
 
 TRY_AGAIN = 75
@@ -61,6 +62,7 @@ class Attempt:
     limits: Limits = field(default_factory=Limits)
     started: float = field(default_factory=time.monotonic)
     starts: dict[str, int] = field(default_factory=dict)
+    requests: dict[str, dict[str, Any]] = field(default_factory=dict)
     results: dict[str, str] = field(default_factory=dict)
     total: int = 0
     escalate: bool = False
@@ -92,7 +94,7 @@ class Attempt:
 
     def _task(self, item: Task) -> Task:
         key = item["key"]
-        request = pending_request(self.layout, key) or {}
+        request = self.requests.setdefault(key, pending_request(self.layout, key) or {})
         kind = record_kind(item)
         if key not in self.starts:
             record = Ledger(self.layout.folder, item).read(kind, key, arrays=False)
@@ -121,14 +123,18 @@ class Attempt:
 
     def _note(self, task: Task, answer: dict[str, Any]) -> None:
         self.results[task["key"]] = answer["status"]
-        if task.get("request"):
-            self.layout.request(task["key"]).unlink(missing_ok=True)
         if answer["status"] == "failed" and answer.get("reason") in RESOURCE_REASONS:
             self.escalate = True
         print(
             f"{now()} {task['kind']} {task['key']} {answer['status']} {answer.get('reason', '')}", flush=True
         )
         write_json(self.layout.worker(self.job), identity() | {"since": now(), **self.summary()})
+
+    def close_requests(self) -> None:
+        """Remove the requests of the calculations that were done; those are in the records now."""
+        for key, request in self.requests.items():
+            if request:
+                self.layout.request(key).unlink(missing_ok=True)
 
     def summary(self) -> dict[str, Any]:
         """Return the counts and the keys without a good result, for progress and status."""
@@ -168,6 +174,7 @@ def run_job(
         except StoppedError as stop:
             print(f"{now()} {stop}", flush=True)
             return 128 + stop.signum
+        work.close_requests()
     if work.escalate and not last_attempt:
         return TRY_AGAIN
     write_json(layout.job_done(job), work.summary() | {"stage": plan["stage"], "finished": now()})
@@ -176,19 +183,33 @@ def run_job(
 
 def _do(plan: dict[str, Any], work: Attempt, walk: Walk | None) -> None:
     if plan["stage"] == "reference":
-        _walk_chains(plan, work, walk)
-    points = plan.get("publish" if plan["stage"] == "reference" else "points", [])
-    work.total += len(points)
-    _compute_points(points, work)
+        work.total = len(plan["reference_keys"]) + len(plan["publish"])
+        _walk_chains(plan, work, walk or _chemistry_walk())
+        _publish(plan["publish"], work)
+    else:
+        work.total = len(plan["points"])
+        _compute_points(plan["points"], work)
 
 
-def _walk_chains(plan: dict[str, Any], work: Attempt, walk: Walk | None) -> None:
-    if walk is None:
-        from scission.chemistry.walk import walk_chain as walk
+def _chemistry_walk() -> Walk:
+    from scission.chemistry.walk import walk_chain
+
+    return walk_chain
+
+
+def _walk_chains(plan: dict[str, Any], work: Attempt, walk: Walk) -> None:
     store = Ledger(work.layout.folder, {})
-    work.total = len(plan["reference_keys"])
     for chain in plan["chains"]:
         walk(chain, store, work.run)
+    for key in plan["reference_keys"]:
+        record = store.read("reference", key, arrays=False)
+        if record is not None:
+            work.keep(record)
+
+
+def _publish(items: list[Task], work: Attempt) -> None:
+    for item in items:
+        work.keep(publish(item, Ledger(work.layout.folder, item)))
 
 
 def _compute_points(points: list[Task], work: Attempt) -> None:
