@@ -40,6 +40,7 @@ class Solution:
         t2: amplitudes: one (n_occ, n_occ, n_vir, n_vir) array for a closed shell, else the
             three spin blocks aa, ab, bb.
         n_correlated: number of correlated electrons.
+        n_inactive: doubly occupied orbitals outside the space of ``natural_occupations``.
         dipole: (3,) dipole moment of the reference, atomic units, origin at the nuclear charge centre.
         notes: remarks in words, by subject (how the active space was chosen, ...).
         extra: further arrays that a later stage needs (CI vectors and the like), by name.
@@ -64,6 +65,7 @@ class Solution:
     t1: tuple[Array, ...] | None = None
     t2: tuple[Array, ...] | None = None
     n_correlated: int | None = None
+    n_inactive: int = 0
     dipole: Array | None = None
     notes: dict[str, str] = field(default_factory=dict)
     extra: dict[str, Array] = field(default_factory=dict)

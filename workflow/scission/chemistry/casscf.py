@@ -1,0 +1,204 @@
+"""CASSCF references: spin fixed, orbitals and CI vectors carried, roots tracked."""
+
+from __future__ import annotations
+
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+from pyscf import fci, gto, mcscf
+
+from scission.records.store import Record, Store
+from scission.solution import Solution
+
+from . import scf
+from .active_space import ActiveSpace, choose_space
+from .fragments import fragment_densities
+from .molecule import build_mole, root_overlap
+from .reference import solve_reference
+from .solutions import dipole_moment
+
+Array = NDArray[np.float64]
+
+ENERGY_TOLERANCE = 1e-10
+GRADIENT_TOLERANCE = 3e-6
+CI_TOLERANCE = 1e-11
+MAX_MACRO_CYCLES = 80
+_SPIN_SHIFT = 0.5
+_UNBROKEN = 0.05
+"""<S^2> below which an unrestricted singlet shows no broken bond."""
+
+
+def solve_casscf(task: dict[str, Any], store: Store) -> Solution:
+    """Return the lowest CASSCF solution over the task's starts.
+
+    Starts are ``carry`` (orbitals and CI vectors of a finished record) and ``select`` (choose the active
+    space here, from the unrestricted determinant's natural orbitals).
+    """
+    mole = build_mole(task["molecule"], task["spec"]["basis"], np.array(task["positions"]))
+    best: Solution | None = None
+    for start in task["starts"]:
+        begun = _begin(task, store, mole, start)
+        if begun is None:
+            continue
+        solution = _optimise(task, mole, *begun)
+        if best is None or _better(solution, best):
+            best = solution
+        if task.get("choose") == "first" and solution.converged:
+            break
+    if best is None:
+        raise RuntimeError("no start was given from which the active space could be optimised")
+    return best
+
+
+def casci_object(mole: gto.Mole, spec: dict[str, Any], sizes: Array, orbital_step: bool) -> Any:
+    """Return the engine's CASSCF (``orbital_step``) or CASCI object with fixed spin and our tolerances."""
+    _, n_orbitals, n_electrons = (int(n) for n in sizes)
+    field = scf.build_field(mole, spec)
+    make = mcscf.CASSCF if orbital_step else mcscf.CASCI
+    n_beta = (n_electrons - mole.spin) // 2
+    mc = make(field, n_orbitals, (n_electrons - n_beta, n_beta))
+    mc.fcisolver = fci.direct_spin1.FCI(mole)
+    mc.fcisolver.conv_tol, mc.fcisolver.max_cycle = CI_TOLERANCE, 200
+    s = mole.spin / 2.0
+    mc.fix_spin_(shift=_SPIN_SHIFT, ss=s * (s + 1.0))
+    states = spec.get("states", 1)
+    if states > 1 and orbital_step:
+        mc = mc.state_average_(np.full(states, 1.0 / states))
+    elif states > 1:
+        mc.fcisolver.nroots = states
+    if orbital_step:
+        mc.conv_tol, mc.conv_tol_grad = ENERGY_TOLERANCE, GRADIENT_TOLERANCE
+        mc.max_cycle_macro, mc.chkfile = MAX_MACRO_CYCLES, None
+        mc.canonicalization = False
+    mc.verbose = 0
+    return mc
+
+
+def finish_casscf(task: dict[str, Any], record: Record) -> Solution:
+    """Return a finished record's wavefunction with natural occupations and leading weight."""
+    mole = build_mole(task["molecule"], task["spec"]["basis"], np.array(task["positions"]))
+    mc = casci_object(mole, task["spec"], record.arrays["active"], orbital_step=False)
+    _, inverse_root = root_overlap(mole)
+    coeff = inverse_root @ record.arrays["mo_lowdin"][0]
+    return _solution(task, mole, mc, coeff, list(record.arrays["ci"]), record.arrays["state_energies"], True)
+
+
+def _begin(task: dict[str, Any], store: Store, mole: gto.Mole, start: dict[str, Any]) -> tuple[Any, ...] | None:
+    """Return (coefficients, CI vectors or None, sizes, notes) to start from, or ``None``."""
+    if "carry" in start:
+        parent = store.read("reference", start["carry"])
+        if parent is None or parent.status != "converged":
+            return None
+        _, inverse_root = root_overlap(mole)
+        coeff = inverse_root @ parent.arrays["mo_lowdin"][0]
+        notes = {"active_space": parent.notes.get("active_space", ""), "start": f"carried from {parent.key}"}
+        return coeff, list(parent.arrays["ci"]), parent.arrays["active"], notes
+    _, inverse_root = root_overlap(mole)
+    space = _select(task, store, mole)
+    sizes = np.array([space.n_inactive, space.n_orbitals, space.n_electrons])
+    return inverse_root @ space.orbitals, None, sizes, {"active_space": space.why, "start": "space chosen here"}
+
+
+def _select(task: dict[str, Any], store: Store, mole: gto.Mole) -> ActiveSpace:
+    """Choose the space from the lowest unrestricted determinant; where its bond is ionic, from neutral fragments.
+
+    The restricted determinant of an ionic bond is stable far beyond the length where the bond has turned
+    covalent, so that only the separate fragments show which orbitals the electrons of the bond end up in.
+    """
+    helper = {**task, "spec": {**task["spec"], "reference": "UHF"}, "choose": "lowest", "stability": True, "remedy": ""}
+    helper["starts"] = [{"engine": "minao"}, {"broken": True}, {"fragments": True}]
+    field, _, _ = solve_reference(helper, store)
+    density = np.asarray(field.make_rdm1()).sum(axis=0)
+    if mole.spin == 0 and abs(field.spin_square()[0]) < _UNBROKEN and len(task["fragments"]) == 2:
+        density = _neutral_density(task, density)
+    return choose_space(mole, density, task["spec"]["active_space"], task["bonds"], task["fragments"])
+
+
+def _neutral_density(task: dict[str, Any], otherwise: Array) -> Array:
+    positions = np.array(task["positions"])
+    a, b = task["bonds"][0]
+    basis, axis = task["spec"]["basis"], positions[b] - positions[a]
+    for _, density in fragment_densities(task["molecule"], basis, positions, task["fragments"], axis):
+        return density.sum(axis=0)  # the first is the lowest neutral split
+    return otherwise
+
+
+def _optimise(task: dict[str, Any], mole: gto.Mole, coeff: Array, ci: Any, sizes: Array, notes: dict[str, str]) -> Solution:
+    """Optimise orbitals and CI vectors; where the first-order steps do not converge, the second-order solver."""
+    spec = task["spec"]
+    mc = casci_object(mole, spec, sizes, orbital_step=True)
+    guess = ci if ci is None or spec.get("states", 1) > 1 else ci[0]
+    if task.get("remedy") != "second-order":
+        mc.kernel(coeff, ci0=guess)
+        coeff, guess = mc.mo_coeff, mc.ci
+    if not mc.converged:
+        mc = mcscf.newton(casci_object(mole, spec, sizes, orbital_step=True))
+        mc.max_cycle_macro = MAX_MACRO_CYCLES
+        mc.kernel(coeff, ci0=guess)
+    vectors = list(mc.ci) if spec.get("states", 1) > 1 else [mc.ci]
+    energies = np.atleast_1d(mc.e_states if spec.get("states", 1) > 1 else mc.e_tot)
+    solution = _solution(task, mole, mc, mc.mo_coeff, vectors, energies, False)
+    solution.converged = bool(mc.converged)
+    solution.notes = notes
+    solution.extra["active"] = sizes
+    return solution
+
+
+def _solution(
+    task: dict[str, Any], mole: gto.Mole, mc: Any, coeff: Array, vectors: list[Array], energies: Array, diagnose: bool
+) -> Solution:
+    n_core, n_active = int(mc.ncore), int(mc.ncas)
+    order = np.argsort(energies, kind="stable")
+    vectors, energies = [vectors[i] for i in order], np.asarray(energies, dtype=float)[order]
+    dm1, s2, occupations, weight = _describe(mc, vectors[0], diagnose)
+    density = 2.0 * coeff[:, :n_core] @ coeff[:, :n_core].T
+    active = coeff[:, n_core : n_core + n_active]
+    occ = np.zeros((1, coeff.shape[1]))
+    occ[0, :n_core] = 2.0
+    occ[0, n_core : n_core + n_active] = np.diag(dm1)
+    root, _ = root_overlap(mole)
+    overlap = root @ root
+    return Solution(
+        reference="CASSCF",
+        correlation="none",
+        converged=True,
+        energy=float(energies[0]),
+        n_electrons=(int(mole.nelec[0]), int(mole.nelec[1])),
+        spin=mole.spin / 2.0,
+        mo_coeff=coeff[None],
+        mo_occ=occ,
+        overlap=overlap,
+        s2=s2,
+        energies={"reference": float(energies[0]), "nuclear": float(mole.energy_nuc())},
+        state_energies=energies,
+        natural_occupations=occupations,
+        leading_weight=weight,
+        n_inactive=n_core,
+        dipole=dipole_moment(mc._scf, density + active @ dm1 @ active.T),
+        extra={
+            "mo_lowdin": (root @ coeff)[None],
+            "mo_occ": occ,
+            "ci": np.array(vectors),
+            "active": np.array([n_core, n_active, sum(mc.nelecas)]),
+        },
+    )
+
+
+def _describe(mc: Any, vector: Array, diagnose: bool) -> tuple[Array, float, Array | None, float | None]:
+    """Return density matrix, <S^2>, natural occupations and leading weight of one CI vector."""
+    size, electrons = mc.ncas, mc.nelecas
+    dm1 = fci.direct_spin1.make_rdm1(vector, size, electrons)
+    s2 = float(fci.spin_op.spin_square0(vector, size, electrons)[0])
+    if not diagnose:
+        return dm1, s2, None, None
+    values, rotation = np.linalg.eigh(dm1)
+    values, rotation = values[::-1], rotation[:, ::-1]
+    turned = fci.addons.transform_ci(vector, electrons, rotation)
+    return dm1, s2, values.copy(), float(np.max(turned**2))
+
+
+def _better(new: Solution, old: Solution) -> bool:
+    if new.converged != old.converged:
+        return new.converged
+    return new.energy < old.energy - 1e-7

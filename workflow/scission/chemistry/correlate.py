@@ -1,0 +1,78 @@
+"""Correlation methods on a finished reference, at one geometry."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from typing import Any
+
+import numpy as np
+from pyscf import gto
+from pyscf.data.elements import chemcore
+
+from scission.records.store import Record, Store
+from scission.solution import Solution
+
+from . import scf
+from .coupled_cluster import coupled_cluster
+from .full_ci import full_ci
+from .molecule import build_mole
+from .nevpt2 import nevpt2
+from .perturbation import second_order_energy
+from .recording import Stopwatch, record_of
+from .reference import carried
+from .solutions import solution_of_field
+
+METHODS: dict[str, Callable[[dict[str, Any], Any, Record, int], Solution]] = {
+    "MP2": second_order_energy,
+    "CCSD": coupled_cluster,
+    "CCSD(T)": coupled_cluster,
+    "FCI": full_ci,
+    "NEVPT2": nevpt2,
+}
+"""Correlation -> function (task, mean field, reference record, frozen orbitals) -> Solution."""
+
+_FROM_REFERENCE = ("s2", "s2_excess", "uhf_hono", "uhf_luno", "triplet_stability", "hono", "luno", "c0_squared", "homo_lumo_gap")
+
+
+def correlate_point(task: dict[str, Any], store: Store, watch: Stopwatch) -> Record:
+    """Compute a point's correlation from the orbitals of its reference record.
+
+    Raises:
+        RuntimeError: the reference record is missing or not converged; callers check that before.
+    """
+    reference = store.read("reference", task["reference_key"])
+    if reference is None or reference.status != "converged":
+        raise RuntimeError(f"reference {task['reference_key']} is missing or not converged")
+    mole = build_mole(task["molecule"], task["spec"]["basis"], np.array(task["positions"]))
+    field = prepared_field(task, mole, reference)
+    frozen = chemcore(mole) if task["frozen_core"] else 0
+    solution = METHODS[task["correlation"]](task, field, reference, frozen)
+    solution.correlation = task["correlation"]
+    record = record_of(solution, "point", task, watch)
+    record.reference_stamp = reference.stamp
+    _inherit(record, reference)
+    return record
+
+
+def prepared_field(task: dict[str, Any], mole: gto.Mole, reference: Record) -> Any:
+    """Return the mean field of the reference record, ready for a correlation method."""
+    field = scf.build_field(mole, task["spec"])
+    if task["spec"]["reference"] == "CASSCF":
+        return field
+    return scf.put_orbitals(field, carried(reference, mole), float(reference.scalars["energy"]))
+
+
+def solution_on(field: Any, task: dict[str, Any]) -> Solution:
+    """Return the Solution of a mean field, to be completed by a correlation method."""
+    return solution_of_field(field, task["spec"], diagnose=False)
+
+
+def _inherit(record: Record, reference: Record) -> None:
+    """Take over the diagnostics and remarks of the reference that the correlated record lacks."""
+    for name in _FROM_REFERENCE:
+        if name in reference.diagnostics and name not in record.diagnostics:
+            record.diagnostics[name] = reference.diagnostics[name]
+            record.absent.pop(name, None)
+    record.notes = {**reference.notes, **record.notes}
+    if "natural_occupations" in reference.arrays:
+        record.arrays.setdefault("natural_occupations", reference.arrays["natural_occupations"])

@@ -1,0 +1,166 @@
+"""Self-consistent references at one geometry: try starts, keep the right one, write the record.
+
+The walk over a scan (:mod:`scission.chemistry.walk`) says from where to start and what counts as right.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from typing import Any
+
+import numpy as np
+from pyscf import gto
+
+from scission.records.store import Record, Store
+
+from . import scf
+from .fragments import fragment_densities
+from .molecule import build_mole, root_overlap
+from .orbitals import Orbitals, state_overlap_any_spin
+
+_SAME_ENERGY = 1e-7
+_DISTINCT = 1e-4
+UNRESTRICTED = ("UHF", "UKS")
+
+
+def solve_reference(task: dict[str, Any], store: Store) -> tuple[Any, gto.Mole, str]:
+    """Return (field, molecule, remark) of the start that fits the task best.
+
+    ``task["starts"]`` lists the starts, each a mapping with one of the keys ``carry`` (key of a finished
+    record whose orbitals are carried here), ``engine`` (one of the engine's own guesses), ``broken`` (along
+    the triplet instability of the restricted determinant), ``fragments`` (all splits of the fragments).
+    ``task["choose"]`` is ``first`` (the first start that converges, else the lowest) or ``lowest``;
+    ``task["stability"]`` asks to follow internal instabilities of each candidate.
+    """
+    mole = build_mole(task["molecule"], task["spec"]["basis"], np.array(task["positions"]))
+    best: Any = None
+    remark = ""
+    for label, field in _candidates(task, store, mole):
+        if best is None or _better(field, best):
+            best, remark = field, label
+        if task.get("choose") == "first" and field.converged:
+            break
+    if best is None:
+        raise RuntimeError("no start was given from which the reference could be computed")
+    if task.get("stability") and best.converged:
+        best = _stable(best)
+    return best, mole, remark
+
+
+def carried(record: Record, mole: gto.Mole) -> Orbitals:
+    """Return a record's orbitals carried to ``mole``: orthonormal there, as like the old ones as can be."""
+    _, inverse_root = root_overlap(mole)
+    return Orbitals(record.arrays["mo_lowdin"], record.arrays["mo_occ"]).transformed(inverse_root)
+
+
+def lowdin(record: Record) -> Orbitals:
+    """Return a record's orbitals in symmetrically orthogonalised basis functions."""
+    return Orbitals(record.arrays["mo_lowdin"], record.arrays["mo_occ"])
+
+
+def _candidates(task: dict[str, Any], store: Store, mole: gto.Mole) -> Iterator[tuple[str, Any]]:
+    """Yield (how it was started, converged or unconverged field) of each start, one after another."""
+    spec, remedy = task["spec"], task.get("remedy", "")
+    for start in task["starts"]:
+        if "carry" in start:
+            parent = store.read("reference", start["carry"])
+            if parent is not None and parent.status == "converged":
+                yield f"carried from {parent.key}", _from_parent(task, mole, parent, remedy)
+        elif "engine" in start:
+            field = scf.build_field(mole, spec)
+            density = scf.default_density(field, start["engine"])
+            yield f"engine's {start['engine']} guess", scf.converge(field, density, remedy)
+        elif "broken" in start:
+            yield from _broken(spec, mole)
+        elif "fragments" in start and len(task["fragments"]) == 2:
+            yield from _from_fragments(task, mole, remedy)
+
+
+def _from_parent(task: dict[str, Any], mole: gto.Mole, parent: Record, remedy: str) -> Any:
+    """Converge from a parent's orbitals; where the result is another state, stay near with second order."""
+    spec = task["spec"]
+    start = carried(parent, mole)
+    field = scf.converge(scf.build_field(mole, spec), _spin_density(spec, start), remedy)
+    if task.get("choose") != "first" or _likeness(field, start, mole) >= task.get("alike", 0.9):
+        return field
+    near = scf.second_order(scf.build_field(mole, spec), *_as_engine(spec, start))
+    if near.converged and (not field.converged or _likeness(near, start, mole) > _likeness(field, start, mole)):
+        return near
+    return field
+
+
+def _likeness(field: Any, start: Orbitals, mole: gto.Mole) -> float:
+    root, _ = root_overlap(mole)
+    return state_overlap_any_spin(start.transformed(root), scf.orbitals_of(field).transformed(root))[0]
+
+
+def _broken(spec: dict[str, Any], mole: gto.Mole) -> Iterator[tuple[str, Any]]:
+    """Yield the unrestricted solution that lies along the restricted determinant's triplet instability."""
+    if mole.spin != 0 or mole.nelectron < 2:
+        return
+    closed = {**spec, "reference": "RKS" if spec.get("functional") else "RHF"}
+    restricted = scf.converge(scf.build_field(mole, closed), None)
+    start = scf.broken_symmetry_start(restricted)
+    if start is not None:
+        yield "along the triplet instability", scf.converge(scf.build_field(mole, spec), start.density())
+
+
+def _from_fragments(task: dict[str, Any], mole: gto.Mole, remedy: str) -> Iterator[tuple[str, Any]]:
+    for label, density in _split_densities(task):
+        field = scf.build_field(mole, task["spec"])
+        yield label, scf.converge(field, density, remedy)
+
+
+def _split_densities(task: dict[str, Any]) -> Iterator[tuple[str, Any]]:
+    """Yield the fragments' densities; for Kohn-Sham those of Hartree-Fock started from them.
+
+    Hartree-Fock finds the states of a broken bond at a tenth of the cost, and only distinct ones go on.
+    """
+    positions = np.array(task["positions"])
+    a, b = task["bonds"][0]
+    basis, axis = task["spec"]["basis"], positions[b] - positions[a]
+    found = fragment_densities(task["molecule"], basis, positions, task["fragments"], axis)
+    if not task["spec"].get("functional"):
+        yield from found
+        return
+    plain = {**task["spec"], "reference": "UHF", "functional": None}
+    mole = build_mole(task["molecule"], basis, positions)
+    fields = [(label, scf.converge(scf.build_field(mole, plain), density)) for label, density in found]
+    known: list[float] = []
+    for label, field in sorted(fields, key=lambda f: f[1].e_tot):
+        if field.converged and not any(abs(field.e_tot - e) < _DISTINCT for e in known):
+            known.append(field.e_tot)
+            yield label, np.asarray(field.make_rdm1())
+
+
+def _stable(field: Any) -> Any:
+    """Follow internal instabilities; of equal alpha and beta orbitals also the one that makes them differ."""
+    field = scf.follow_instability(field)
+    if isinstance(field, scf.uhf.UHF) and field.mol.spin == 0 and abs(field.spin_square()[0]) < 1e-5:
+        closed = scf.closed_shell_twin(field)
+        start = scf.broken_symmetry_start(closed)
+        if start is not None:
+            lower = scf.second_order(field.copy(), start.coeff, start.occ)
+            if lower.converged and lower.e_tot < field.e_tot - _SAME_ENERGY:
+                return scf.follow_instability(lower)
+    return field
+
+
+def _spin_density(spec: dict[str, Any], orbitals: Orbitals) -> Any:
+    density = orbitals.density()
+    if spec["reference"] in UNRESTRICTED and density.ndim == 2:
+        return np.array([density / 2, density / 2])
+    return density
+
+
+def _as_engine(spec: dict[str, Any], orbitals: Orbitals) -> tuple[Any, Any]:
+    if spec["reference"] in UNRESTRICTED:
+        return orbitals.by_spin()
+    return orbitals.coeff[0], orbitals.occ[0]
+
+
+def _better(new: Any, old: Any) -> bool:
+    if new.converged != old.converged:
+        return bool(new.converged)
+    return bool(new.e_tot < old.e_tot - _SAME_ENERGY)
+

@@ -1,0 +1,176 @@
+"""Self-consistent fields: building, starting, converging and following instabilities."""
+
+from __future__ import annotations
+
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+from pyscf import dft, gto
+from pyscf.lib import davidson1
+from pyscf.scf import hf, rohf, stability, uhf
+
+from .orbitals import Orbitals
+
+Array = NDArray[np.float64]
+
+ENERGY_TOLERANCE = 1e-10
+GRADIENT_TOLERANCE = 1e-6
+MAX_CYCLES = 60
+_SECOND_ORDER_CYCLES = 60
+_FOLLOWED = 5
+"""How often an instability is followed at most; two or three were the most seen."""
+
+REMEDIES: dict[str, dict[str, float]] = {
+    "damping": {"damp": 0.5, "diis_start_cycle": 12},
+    "level-shift": {"level_shift": 0.5},
+}
+
+
+def build_field(mole: gto.Mole, spec: dict[str, Any]) -> Any:
+    """Return the engine's mean-field object of a reference; CASSCF starts from RHF or ROHF."""
+    kind = spec["reference"]
+    if kind == "CASSCF":
+        kind = "RHF" if mole.spin == 0 else "ROHF"
+    makers = {"RHF": hf.RHF, "ROHF": rohf.ROHF, "UHF": uhf.UHF, "RKS": dft.rks.RKS, "UKS": dft.uks.UKS}
+    field = makers[kind](mole)
+    if spec.get("functional"):
+        field.xc = spec["functional"]
+    field.conv_tol = ENERGY_TOLERANCE
+    field.conv_tol_grad = GRADIENT_TOLERANCE
+    field.max_cycle = MAX_CYCLES
+    field.chkfile = None
+    return field
+
+
+def converge(field: Any, density: Array | None, remedy: str = "") -> Any:
+    """Converge ``field`` from a density matrix (``None``: the engine's default), in two steps.
+
+    First the usual extrapolated iterations, then, where those do not converge, the second-order solver.
+    ``remedy`` changes the first step (damping, level-shift) or leaves it out (second-order).
+    Returns the field; its ``converged`` tells how it went.
+    """
+    if remedy == "second-order":
+        field.max_cycle = 5
+    for name, value in REMEDIES.get(remedy, {}).items():
+        setattr(field, name, value)
+    try:
+        field.kernel(dm0=density)
+    except (AttributeError, np.linalg.LinAlgError):
+        # extrapolation from linearly dependent errors; the iterations so far are still good to start from
+        field.converged = False
+    if field.converged and remedy != "second-order":
+        return field
+    if field.mo_coeff is None:
+        field.mo_energy, field.mo_coeff = field.eig(field.get_fock(dm=density), field.get_ovlp())
+        field.mo_occ = field.get_occ(field.mo_energy, field.mo_coeff)
+    return second_order(field, field.mo_coeff, field.mo_occ)
+
+
+def second_order(field: Any, coeff: Array, occ: Array) -> Any:
+    """Converge with the second-order solver from orbitals; it stays near where it starts."""
+    solver = field.newton()
+    solver.max_cycle = _SECOND_ORDER_CYCLES
+    solver.conv_tol_grad = GRADIENT_TOLERANCE
+    solver.kernel(mo_coeff=coeff, mo_occ=occ)
+    field.converged, field.e_tot = bool(solver.converged), float(solver.e_tot)
+    # the second-order solver leaves orbitals that are not canonical within occupied and virtual ones
+    fock = field.get_fock(dm=field.make_rdm1(solver.mo_coeff, solver.mo_occ))
+    field.mo_occ = solver.mo_occ
+    field.mo_energy, field.mo_coeff = field.canonicalize(solver.mo_coeff, solver.mo_occ, fock)
+    return field
+
+
+def is_restricted_open(field: Any) -> bool:
+    """Whether the field is a restricted open-shell one."""
+    return isinstance(field, rohf.ROHF)
+
+
+def follow_instability(field: Any) -> Any:
+    """Follow internal instabilities until none is left, five times at most; return the lowest field."""
+    for _ in range(_FOLLOWED):
+        if not field.converged:
+            return field
+        coeff, _, stable, _ = field.stability(internal=True, external=False, return_status=True)
+        if stable:
+            return field
+        lower = second_order(field.copy(), np.asarray(coeff), field.mo_occ)
+        if not lower.converged or lower.e_tot > field.e_tot - 1e-8:
+            return field
+        field = lower
+    return field
+
+
+def broken_symmetry_start(restricted: Any) -> Orbitals | None:
+    """Return unrestricted orbitals rotated along a restricted determinant's triplet instability.
+
+    ``None`` where the determinant is stable or not a closed shell.
+    """
+    if is_restricted_open(restricted) or not restricted.converged:
+        return None
+    coeff, stable = stability.rhf_external(restricted, return_status=True)
+    if stable:
+        return None
+    half = restricted.mo_occ / 2.0
+    return Orbitals(np.array(coeff), np.array([half, half]))
+
+
+def closed_shell_twin(field: Any) -> Any:
+    """Return the restricted field with the orbitals of an unrestricted one whose spins have equal orbitals."""
+    mole = field.mol
+    if hasattr(field, "xc"):
+        twin = dft.rks.RKS(mole)
+        twin.xc = field.xc
+    else:
+        twin = hf.RHF(mole)
+    twin.chkfile = None
+    twin.mo_coeff, twin.mo_energy = field.mo_coeff[0], field.mo_energy[0]
+    twin.mo_occ, twin.e_tot, twin.converged = field.mo_occ[0] * 2, field.e_tot, field.converged
+    return twin
+
+
+def triplet_stability(field: Any) -> float:
+    """Return the lowest eigenvalue of the triplet stability matrix of a closed-shell determinant, hartree.
+
+    Negative: an unrestricted solution lies lower.  Seeger and Pople, J. Chem. Phys. 66, 3045 (1977).
+    Several starting vectors along the smallest diagonal elements keep the search from missing a symmetry.
+    """
+    _, _, times, diagonal = stability._gen_hop_rhf_external(field)
+
+    def precondition(residual: Array, eigenvalue: float, _: Array) -> Array:
+        shift = diagonal - eigenvalue
+        shift[np.abs(shift) < 1e-8] = 1e-8
+        return residual / shift
+
+    starts = [1.0 / np.maximum(diagonal, 1e-2)]
+    for i in np.argsort(diagonal)[:3]:
+        unit = np.zeros_like(diagonal)
+        unit[i] = 1.0
+        starts.append(unit)
+    _, values, _ = davidson1(
+        lambda xs: [times(x) for x in xs], starts, precondition, nroots=1, tol=1e-8, max_cycle=80, verbose=0
+    )
+    return float(values[0])
+
+
+def orbitals_of(field: Any) -> Orbitals:
+    """Return a field's orbitals with the spin axis first."""
+    coeff, occ = np.asarray(field.mo_coeff), np.asarray(field.mo_occ)
+    return Orbitals(coeff, occ) if coeff.ndim == 3 else Orbitals(coeff[None], occ[None])
+
+
+def put_orbitals(field: Any, orbitals: Orbitals, energy: float) -> Any:
+    """Give a field finished orbitals and energy, with canonical orbital energies, as if just converged."""
+    unrestricted = isinstance(field, uhf.UHF)
+    coeff = orbitals.coeff if unrestricted else orbitals.coeff[0]
+    occ = orbitals.occ if unrestricted else orbitals.occ[0]
+    fock = field.get_fock(dm=field.make_rdm1(coeff, occ))
+    field.mo_coeff, field.mo_occ = coeff, occ
+    field.mo_energy, field.mo_coeff = field.canonicalize(coeff, occ, fock)
+    field.e_tot, field.converged = energy, True
+    return field
+
+
+def default_density(field: Any, kind: str) -> Array:
+    """Return one of the engine's own starting densities (minao, atom, 1e, huckel)."""
+    return field.get_init_guess(key=kind)

@@ -1,0 +1,119 @@
+"""Reference chains: which references are established together, and where a chain starts.
+
+A reference is carried from geometry to geometry, so neighbours must be close.  Where the grid of a scan is
+coarse, or lies far from the equilibrium, auxiliary nodes bridge the gaps; they are no points of the campaign.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterable, Sequence
+from dataclasses import replace
+from typing import Any
+
+import numpy as np
+
+from scission.campaign import Molecule, Scan
+from scission.geometry import ScanPath, equilibrium_guess_angstrom, path_at
+
+from .identity import canonical, reference_key
+from .types import Chain, Node
+
+STRETCHED = 2.0
+"""Where an active space is chosen, in units of the expected equilibrium length: bond orbitals are well
+separated from the rest there, and fragments still feel each other, which fixes their orientation."""
+
+_NEAR = (0.85, 1.2)
+_WIDEST_RATIO = ((3.0, 1.35), (np.inf, 2.0))
+"""Largest ratio of neighbouring lengths, up to so many equilibrium lengths: overlaps of carried orbitals
+stay near one with these (own measurement on the demo's molecules)."""
+
+
+def molecule_facts(molecule: Molecule) -> dict[str, Any]:
+    """Return what identity and chemistry need to know of a molecule besides its geometry."""
+    return {
+        "symbols": list(molecule.symbols),
+        "charge": molecule.charge,
+        "multiplicity": molecule.multiplicity,
+    }
+
+
+def build_chain(name: str, molecule: Molecule, scan: Scan, path: ScanPath, spec: dict[str, Any]) -> Chain:
+    """Return the chain that establishes the references of ``spec`` along ``path``.
+
+    Lengths of the nodes are in angstrom, in increasing order.
+    """
+    facts = molecule_facts(molecule)
+    grid = [float(v) for v in path.values[:, 0]]
+    equilibrium = equilibrium_guess_angstrom(molecule, scan)
+    extra = auxiliary_lengths(grid, equilibrium, need_stretched=spec["reference"] == "CASSCF")
+    nodes = [
+        _node(facts, spec, path.bonds, x, positions, auxiliary=False)
+        for x, positions in zip(grid, path.positions, strict=True)
+    ]
+    if extra:
+        bridge = path_at(molecule, scan, extra)
+        nodes += [
+            _node(facts, spec, path.bonds, x, positions, auxiliary=True)
+            for x, positions in zip(extra, bridge.positions, strict=True)
+        ]
+    chain = Chain(name, facts, spec, path.bonds, path.fragments, tuple(nodes), 0, 0)
+    return _ordered(chain, equilibrium)
+
+
+def auxiliary_lengths(grid: Sequence[float], equilibrium: float, need_stretched: bool) -> list[float]:
+    """Return the lengths (angstrom) to add to ``grid`` so that no step of a chain is too wide.
+
+    The expected equilibrium is added when no grid point lies near it, the stretched bond when it is needed
+    and the grid has no point there; gaps are then filled in equal ratios.
+    """
+    lengths = sorted(grid)
+    low, high = _NEAR
+    added: list[float] = []
+    if not any(low * equilibrium <= x <= high * equilibrium for x in lengths):
+        added.append(equilibrium)
+    target = STRETCHED * equilibrium
+    if need_stretched and not any(0.9 * target <= x <= 1.25 * target for x in lengths):
+        added.append(target)
+    knots = sorted([*lengths, *added])
+    for a, b in zip(knots, knots[1:], strict=False):
+        added += _fill(a, b, equilibrium)
+    return [round(x, 6) for x in sorted(added)]
+
+
+def merge_chains(chains: Iterable[Chain]) -> list[Chain]:
+    """Merge chains of the same molecule, reference and coordinate (scans that differ in their grids only).
+
+    A grid point takes the place of an auxiliary node of the same key.
+    """
+    merged: dict[str, Chain] = {}
+    for chain in chains:
+        identity = canonical([chain.molecule, chain.spec, chain.bonds, chain.fragments])
+        if identity not in merged:
+            merged[identity] = chain
+            continue
+        known = merged[identity]
+        nodes = {n.key: n for n in (*known.nodes, *chain.nodes) if n.auxiliary}
+        nodes |= {n.key: n for n in (*known.nodes, *chain.nodes) if not n.auxiliary}
+        equilibrium = known.nodes[known.start].coordinate
+        together = replace(known, name=f"{known.name}+{chain.name}", nodes=tuple(nodes.values()))
+        merged[identity] = _ordered(together, equilibrium)
+    return list(merged.values())
+
+
+def _node(facts: dict[str, Any], spec: dict[str, Any], bonds: Any, x: float, positions: Any, auxiliary: bool) -> Node:
+    return Node(reference_key(facts, spec, bonds, positions), x, positions, auxiliary)
+
+
+def _ordered(chain: Chain, equilibrium: float) -> Chain:
+    nodes = tuple(sorted(chain.nodes, key=lambda n: n.coordinate))
+    start, stretched = (
+        min(range(len(nodes)), key=lambda i: abs(nodes[i].coordinate - x))
+        for x in (equilibrium, STRETCHED * equilibrium)
+    )
+    return replace(chain, nodes=nodes, start=start, stretched=stretched)
+
+
+def _fill(a: float, b: float, equilibrium: float) -> list[float]:
+    widest = next(ratio for limit, ratio in _WIDEST_RATIO if a < limit * equilibrium)
+    parts = int(np.ceil(np.log(b / a) / np.log(widest) - 1e-9))
+    return [float(a * (b / a) ** (k / parts)) for k in range(1, parts)]

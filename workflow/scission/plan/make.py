@@ -1,0 +1,165 @@
+"""Expand a campaign into a plan."""
+
+from __future__ import annotations
+
+import math
+from collections import defaultdict
+from collections.abc import Iterable, Sequence
+from typing import Any
+
+from scission import forecast
+from scission.campaign import Campaign, Level, Scan
+from scission.geometry import ScanPath, build_path
+from scission.physics import PHYSICS_VERSION
+
+from .chains import build_chain, merge_chains, molecule_facts
+from .identity import canonical, digest, point_key, reference_key, reference_spec
+from .types import Chain, Job, Plan, Point
+from .write import campaign_digest
+
+BLOCK_SECONDS = 60.0
+"""Work given to one job on a local machine, by the forecast; a cluster's profile asks for more."""
+
+
+def make_plan(campaign: Campaign, block_seconds: float = BLOCK_SECONDS) -> Plan:
+    """Return every point and job of ``campaign``; blocks hold about ``block_seconds`` of forecast work."""
+    points: list[Point] = []
+    chains: list[Chain] = []
+    work: list[dict[str, Any]] = []
+    for scan_name, scan in campaign.scans.items():
+        path = build_path(campaign.molecules[scan.molecule], scan)
+        scan_points, scan_work = _expand_scan(campaign, scan_name, scan, path)
+        points += scan_points
+        work += scan_work
+        chains += _scan_chains(campaign, scan_name, scan, path)
+    jobs = _reference_jobs(merge_chains(chains), [w for w in work if w["correlation"] == "none"])
+    owner = {key: job.id for job in jobs for key in job.payload["reference_keys"]}
+    jobs += _correlate_jobs([w for w in work if w["correlation"] != "none"], owner, block_seconds)
+    return Plan(campaign, tuple(points), tuple(jobs), PHYSICS_VERSION, campaign_digest(campaign, block_seconds))
+
+
+def _expand_scan(
+    campaign: Campaign, name: str, scan: Scan, path: ScanPath
+) -> tuple[list[Point], list[dict[str, Any]]]:
+    """Return the points of a scan and the description of each point's calculation."""
+    molecule = campaign.molecules[scan.molecule]
+    facts = molecule_facts(molecule)
+    points, work = [], []
+    for level_name in scan.levels:
+        level = campaign.levels[level_name]
+        spec = reference_spec(level, molecule)
+        for i, (value, positions) in enumerate(zip(path.values, path.positions, strict=True)):
+            reference = reference_key(facts, spec, path.bonds, positions)
+            key = point_key(reference, level.correlation, level.correlates_valence_only)
+            coordinate = tuple(float(v) for v in value)
+            points.append(Point(name, level_name, i + 1, coordinate, path.names, key, reference))
+            work.append(_describe(level, facts, spec, points[-1], positions))
+    return points, work
+
+
+def _describe(level: Level, facts: dict[str, Any], spec: dict[str, Any], point: Point, positions: Any) -> dict[str, Any]:
+    return {
+        "kind": "correlate",
+        "key": point.key,
+        "reference_key": point.reference_key,
+        "scan": point.scan,
+        "level": point.level,
+        "number": point.number,
+        "coordinate": list(point.coordinate),
+        "molecule": facts,
+        "positions": positions.tolist(),
+        "spec": spec,
+        "correlation": level.correlation,
+        "frozen_core": level.correlates_valence_only,
+    }
+
+
+def _scan_chains(campaign: Campaign, name: str, scan: Scan, path: ScanPath) -> list[Chain]:
+    """Return one chain for each different reference among the levels of a scan."""
+    molecule = campaign.molecules[scan.molecule]
+    specs = {}
+    for level_name in scan.levels:
+        spec = reference_spec(campaign.levels[level_name], molecule)
+        specs.setdefault(canonical(spec), spec)
+    return [build_chain(name, molecule, scan, path, spec) for spec in specs.values()]
+
+
+def _reference_jobs(chains: Sequence[Chain], publish: Sequence[dict[str, Any]]) -> list[Job]:
+    """Return one job a group of chains that share a node: no two jobs ever write the same record."""
+    by_reference: dict[str, list[dict[str, Any]]] = defaultdict(list)
+    for item in publish:
+        by_reference[item["reference_key"]].append(item)
+    jobs = []
+    for group in _sharing(chains):
+        keys = list(dict.fromkeys(n.key for c in group for n in c.nodes))
+        published = _unique(item for key in keys for item in by_reference[key])
+        seconds = sum(forecast.reference_seconds(c.molecule, c.spec) * len(c.nodes) for c in group)
+        memory = max(forecast.reference_memory_mb(c.molecule, c.spec) for c in group)
+        payload = {"chains": [_chain_payload(c) for c in group], "reference_keys": keys, "publish": published}
+        jobs.append(_job("reference", group[0].name, (), payload, len(keys), seconds, memory))
+    return jobs
+
+
+def _correlate_jobs(work: Sequence[dict[str, Any]], owner: dict[str, str], block_seconds: float) -> list[Job]:
+    """Return blocks of consecutive points of a scan at one level, sized by the forecast."""
+    groups: dict[tuple[str, str], list[dict[str, Any]]] = defaultdict(list)
+    for item in _unique(work):
+        groups[item["scan"], item["level"]].append(item)
+    jobs = []
+    for (scan, level), items in groups.items():
+        seconds = forecast.correlate_seconds(items[0])
+        size = max(1, math.floor(block_seconds / seconds))
+        n_blocks = math.ceil(len(items) / size)
+        for b in range(n_blocks):
+            block = items[b * len(items) // n_blocks : (b + 1) * len(items) // n_blocks]
+            needs = tuple(dict.fromkeys(owner[i["reference_key"]] for i in block))
+            memory = forecast.correlate_memory_mb(block[0])
+            name = f"{scan}.{level}"
+            jobs.append(_job("correlate", name, needs, {"points": block}, len(block), seconds * len(block), memory))
+    return jobs
+
+
+def _job(
+    stage: str, name: str, needs: tuple[str, ...], payload: dict[str, Any], n: int, seconds: float, memory: float
+) -> Job:
+    """Return a job whose name follows from its content, with room over its forecast time and memory."""
+    fingerprint = digest(canonical(payload))[:10]
+    runtime = math.ceil(10 + forecast.MARGIN * seconds / 60.0)
+    label = name.split("+")[0]
+    return Job(f"{stage}.{label}.{fingerprint}", stage, needs, n, math.ceil(memory), runtime, payload)
+
+
+def _chain_payload(chain: Chain) -> dict[str, Any]:
+    return {
+        "name": chain.name,
+        "molecule": chain.molecule,
+        "spec": chain.spec,
+        "bonds": [list(b) for b in chain.bonds],
+        "fragments": [list(f) for f in chain.fragments],
+        "start": chain.start,
+        "stretched": chain.stretched,
+        "nodes": [
+            {"key": n.key, "coordinate": n.coordinate, "positions": n.positions.tolist(), "auxiliary": n.auxiliary}
+            for n in chain.nodes
+        ],
+    }
+
+
+def _sharing(chains: Sequence[Chain]) -> list[list[Chain]]:
+    """Group chains that share a node, directly or through others."""
+    groups: list[tuple[set[str], list[Chain]]] = []
+    for chain in chains:
+        keys, members = {n.key for n in chain.nodes}, [chain]
+        apart = []
+        for other_keys, other in groups:
+            if keys & other_keys:
+                keys |= other_keys
+                members = other + members
+            else:
+                apart.append((other_keys, other))
+        groups = [*apart, (keys, members)]
+    return [members for _, members in groups]
+
+
+def _unique(items: Iterable[dict[str, Any]]) -> list[dict[str, Any]]:
+    return list({item["key"]: item for item in items}.values())
