@@ -52,7 +52,7 @@ def _functional(level: Level, path: str) -> list[Problem]:
         rule = f"does not go with {level.reference}: only RKS and UKS take a functional"
         return [Problem(path, level.functional, rule)]
     if not is_functional(level.functional):
-        rule = "is not a known functional (a name such as PBE0, or exchange,correlation such as PBE,PBE; no sums)"
+        rule = "is not a known functional (a name such as PBE0, or exchange,correlation such as PBE,PBE)"
         return [Problem(path, level.functional, rule + functional_like(level.functional))]
     return []
 
@@ -84,7 +84,7 @@ def _orbitals(space: ActiveSpace, path: str) -> list[Problem]:
     for place, text in enumerate(space.atomic_orbitals or []):
         match = ORBITAL.match(text)
         if match is None or match[1] not in ELEMENTS:
-            rule = "is not an atomic orbital: element, number of the atom if one is meant, shell ('N 2p', 'N1 2p')"
+            rule = "is not an atomic orbital: element (and number of the atom), shell: 'N 2p', 'N1 2p'"
             problems.append(Problem(f"{path}.atomic_orbitals[{place}]", text, rule))
     return problems
 

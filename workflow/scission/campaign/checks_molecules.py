@@ -18,10 +18,16 @@ def check_molecules(parts: Parts) -> list[Problem]:
     """Places the atoms of every molecule; those that cannot be placed are taken out of ``parts``."""
     problems = []
     for name, molecule in list(parts.molecules.items()):
-        found = _place(molecule, parts, f"molecules.{name}")
-        if found:
+        path = f"molecules.{name}"
+        misplaced = _place(molecule, parts, path)
+        if misplaced:
             del parts.molecules[name]
-        problems += found or _coinciding(molecule, f"molecules.{name}") + _spin(molecule, f"molecules.{name}")
+            problems += misplaced
+            continue
+        crowded, spin = _coinciding(molecule, path), _spin(molecule, path)
+        parts.crowded_molecules |= {name} if crowded else set()
+        parts.sound_molecules |= {name} if not crowded and not spin else set()
+        problems += crowded + spin
     return problems
 
 
@@ -60,7 +66,7 @@ def _spin(molecule: Molecule, path: str) -> list[Problem]:
         rule = f"leaves {electrons} electrons: at least one is needed"
         return [Problem(f"{path}.charge", molecule.charge, rule)]
     if unpaired > electrons:
-        rule = f"needs {unpaired} unpaired electrons, and the molecule has {electrons} with charge {molecule.charge}"
+        rule = f"needs {unpaired} unpaired electrons, and there are {electrons} (charge {molecule.charge})"
         return [Problem(f"{path}.multiplicity", molecule.multiplicity, rule)]
     if (electrons - unpaired) % 2:
         kind = "odd (1, 3, ...)" if electrons % 2 == 0 else "even (2, 4, ...)"

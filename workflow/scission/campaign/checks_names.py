@@ -3,11 +3,11 @@
 import re
 from collections.abc import Collection
 
+from scission.campaign.model import LONGEST_NAME, NAME_PATTERN
 from scission.campaign.parts import Parts
 from scission.campaign.problems import Problem, one_of
 
-LONGEST_NAME = 64
-_SAFE = re.compile(r"[A-Za-z0-9_][A-Za-z0-9._-]*\Z")
+_SAFE = re.compile(NAME_PATTERN)
 # Names that Windows keeps for devices, whatever follows the first dot: results are copied there too.
 _RESERVED = {"con", "prn", "aux", "nul"} | {f"{port}{n}" for port in ("com", "lpt") for n in range(10)}
 
@@ -31,7 +31,7 @@ def check_names(parts: Parts) -> list[Problem]:
 
 
 def _unsafe(name: str, path: str) -> list[Problem]:
-    if not _SAFE.match(name):
+    if not _SAFE.fullmatch(name):
         rule = "is not a safe name: letters, digits, '.', '_' and '-', not beginning with '.' or '-'"
         return [Problem(path, name, rule)]
     if len(name) > LONGEST_NAME:
@@ -42,29 +42,32 @@ def _unsafe(name: str, path: str) -> list[Problem]:
 
 
 def check_references(parts: Parts) -> list[Problem]:
-    """Molecules and levels that scans and ``reference_level`` name are there, and named once."""
+    """Molecules and levels that scans and ``reference_level`` name are there, and named once.
+
+    Where the whole section is missing that is the problem, and not each name.
+    """
     problems = []
     molecules, levels = parts.declared("molecules"), parts.declared("levels")
     for name, scan in parts.scans.items():
         path = f"scans.{name}"
-        if scan.molecule not in molecules:
+        if molecules and scan.molecule not in molecules:
             rule = f"is not a molecule of this campaign {one_of(molecules)}"
             problems.append(Problem(f"{path}.molecule", scan.molecule, rule))
         for place, level in enumerate(scan.levels):
-            if level not in levels:
+            if levels and level not in levels:
                 rule = f"is not a level of this campaign {one_of(levels)}"
                 problems.append(Problem(f"{path}.levels[{place}]", level, rule))
             elif level in scan.levels[:place]:
                 problems.append(Problem(f"{path}.levels[{place}]", level, "is listed twice"))
     reference = parts.data.get("reference_level")
-    if isinstance(reference, str) and reference not in levels:
+    if isinstance(reference, str) and levels and reference not in levels:
         rule = f"is not a level of this campaign {one_of(levels)}"
         problems.append(Problem("reference_level", reference, rule))
     return problems
 
 
-def check_analysis(parts: Parts, diagnostic_names: Collection[str] | None) -> list[Problem]:
-    """Diagnostics by name (where the list of names is given), sources of thresholds, repeated entries."""
+def check_analysis(parts: Parts, diagnostic_names: Collection[str]) -> list[Problem]:
+    """Diagnostics by name, sources of thresholds, repeated entries."""
     problems = []
     diagnostics = parts.diagnostics
     for name, threshold in diagnostics.thresholds.items():
@@ -79,8 +82,8 @@ def check_analysis(parts: Parts, diagnostic_names: Collection[str] | None) -> li
     return problems + _repeated(list(parts.fit.models), "fit.models")
 
 
-def _unknown_diagnostic(name: str, path: str, known: Collection[str] | None) -> list[Problem]:
-    if known is None or name in known:
+def _unknown_diagnostic(name: str, path: str, known: Collection[str]) -> list[Problem]:
+    if name in known:
         return []
     return [Problem(path, name, f"is not a diagnostic {one_of(known)}")]
 

@@ -1,5 +1,7 @@
 """Each scan: its lengths, its bond, and whether atoms run into each other on the way."""
 
+from itertools import pairwise
+
 import numpy as np
 
 from scission import units
@@ -24,7 +26,7 @@ def check_scans(parts: Parts) -> list[Problem]:
         found = _coordinate(scan, path) + _lengths(scan.stretch, f"{path}.stretch.lengths")
         molecule = parts.molecules.get(scan.molecule)
         if molecule is not None and scan.stretch is not None and not found:
-            found = _geometry(molecule, scan, path)
+            found = _geometry(molecule, scan, path, scan.molecule in parts.crowded_molecules)
         total += number_of_lengths(scan.stretch) * len(scan.levels)
         problems += found
     if total > MOST_POINTS:
@@ -76,23 +78,26 @@ def _list(lengths: list[float], path: str) -> list[Problem]:
         for place, length in enumerate(lengths)
         if length <= 0
     ]
-    for place, (before, length) in enumerate(zip(lengths, lengths[1:], strict=False), 1):
+    for place, (before, length) in enumerate(pairwise(lengths), 1):
         if length <= before:
             rule = f"must be above the length before it ({before:g}): lengths increase"
             problems.append(Problem(f"{path}[{place}]", length, rule))
     return problems
 
 
-def _geometry(molecule: Molecule, scan: Scan, path: str) -> list[Problem]:
+def _geometry(molecule: Molecule, scan: Scan, path: str, crowded: bool) -> list[Problem]:
     """Builds the geometries, as the run will, and looks for atoms on top of each other."""
     points, atoms = number_of_lengths(scan.stretch), len(molecule.symbols)
     if points * atoms > MOST_COORDINATES:
         rule = f"points of {atoms} atoms are more than one scan can hold ({MOST_COORDINATES} together)"
         return [Problem(f"{path}.stretch.lengths", points, rule)]
     try:
-        return _collisions(molecule, build_path(molecule, scan), f"{path}.stretch.lengths")
+        scan_path = build_path(molecule, scan)
+        return [] if crowded else _collisions(molecule, scan_path, f"{path}.stretch.lengths")
     except GeometryError as error:
-        return [Problem(f"{path}.{dotted(fault.where)}", fault.value, fault.rule) for fault in error.faults]
+        # Atoms on top of each other make rings and bonds without length: follow-ons, not problems.
+        faults = [fault for fault in error.faults if not crowded or fault.where != ("stretch", "bond")]
+        return [Problem(f"{path}.{dotted(fault.where)}", fault.value, fault.rule) for fault in faults]
 
 
 def _collisions(molecule: Molecule, scan_path: ScanPath, path: str) -> list[Problem]:
@@ -106,6 +111,8 @@ def _collisions(molecule: Molecule, scan_path: ScanPath, path: str) -> list[Prob
             point, other = np.argwhere(distances < least)[0]
             names = f"{label(molecule.symbols, staying[other])} and {label(molecule.symbols, atom)}"
             distance = distances[point, other] * units.BOHR_IN_ANGSTROM
-            rule = f"angstrom puts {names} {distance:.3g} angstrom apart, nearer than {CLOSEST_ANGSTROM} angstrom"
+            rule = (
+                f"angstrom puts {names} {distance:.3g} angstrom apart: at least {CLOSEST_ANGSTROM} is needed"
+            )
             return [Problem(path, float(scan_path.values[point, 0]), rule)]
     return []

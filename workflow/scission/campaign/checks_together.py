@@ -14,7 +14,7 @@ MOST_FCI_DETERMINANTS = 50_000_000
 """A vector of this length takes 0.4 GB, and the solver holds a dozen."""
 
 MOST_CAS_DETERMINANTS = determinants(16, 8, 8)
-"""16 electrons in 16 orbitals, about the largest space of a conventional solver (common practice, no source)."""
+"""16 electrons in 16 orbitals, about the most a conventional solver takes (common practice, no source)."""
 
 
 def check_together(parts: Parts) -> list[Problem]:
@@ -38,7 +38,7 @@ def _uses(parts: Parts) -> Iterator[tuple[str, str, str]]:
     for scan_name, scan in parts.scans.items():
         for place, level in enumerate(scan.levels):
             pair = (scan.molecule, level)
-            if pair not in seen and scan.molecule in parts.molecules and level in parts.levels:
+            if pair not in seen and scan.molecule in parts.sound_molecules and level in parts.levels:
                 seen.add(pair)
                 yield (f"scans.{scan_name}.levels[{place}]", *pair)
 
@@ -87,7 +87,7 @@ def _correlated(counts: Counts, level: Level, path: str, where: str) -> list[Pro
     if level.correlation == "FCI" and size > MOST_FCI_DETERMINANTS:
         rule = (
             f"means {size:.2g} determinants {where} ({counts.electrons - 2 * core} electrons in "
-            f"{counts.functions - core} orbitals), more than {MOST_FCI_DETERMINANTS:.0e}: take a smaller basis"
+            f"{counts.functions - core} orbitals), more than {MOST_FCI_DETERMINANTS:.0e}: use fewer"
         )
         return [Problem(f"{path}.correlation", level.correlation, rule)]
     return []
@@ -111,7 +111,9 @@ def _active_space(counts: Counts, space: ActiveSpace, states: int, path: str, wh
 
 
 def _misfit(counts: Counts, space: ActiveSpace) -> str:
-    """What is wrong with the active space; "" where it fits."""
+    """What is wrong with the active space; "" where it fits, or is wrong by itself (checked elsewhere)."""
+    if space.electrons > 2 * space.orbitals:
+        return ""
     if space.electrons > counts.electrons:
         return f"electrons are more than the {counts.electrons} outside ECP cores"
     if (counts.electrons - space.electrons) % 2:
@@ -119,8 +121,6 @@ def _misfit(counts: Counts, space: ActiveSpace) -> str:
         return f"electrons leave an odd number in doubly occupied orbitals: it must be {parity}"
     if space.electrons < counts.unpaired:
         return f"electrons are fewer than the {counts.unpaired} unpaired ones"
-    if space.electrons > 2 * space.orbitals:
-        return ""
     if (space.electrons + counts.unpaired) // 2 > space.orbitals:
         return f"orbitals are too few for {counts.unpaired} unpaired among {space.electrons} electrons"
     inactive = (counts.electrons - space.electrons) // 2

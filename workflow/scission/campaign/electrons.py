@@ -35,7 +35,7 @@ def all_electrons(molecule: Molecule) -> int:
 def atom_bases(molecule: Molecule, level: Level) -> dict[str, AtomBasis | None]:
     """Basis on each element of the molecule, None where the level has none for it."""
     names = {symbol: level.basis_of(symbol) for symbol in dict.fromkeys(molecule.symbols)}
-    return {symbol: name and basis_on(name, symbol) or None for symbol, name in names.items()}
+    return {symbol: basis_on(name, symbol) if name else None for symbol, name in names.items()}
 
 
 def count(molecule: Molecule, level: Level) -> Counts | None:

@@ -13,15 +13,15 @@ from scission.campaign.checks_together import check_together
 from scission.campaign.model import Campaign
 from scission.campaign.parts import read_parts
 from scission.campaign.problems import CampaignError, Problem
+from scission.diagnostics import DIAGNOSTICS
 
 _ORDER = ["campaign", *Campaign.model_fields]
 
 
-def load_campaign(path: Path, diagnostic_names: Collection[str] | None = None) -> Campaign:
+def load_campaign(path: Path, diagnostic_names: Collection[str] = tuple(DIAGNOSTICS)) -> Campaign:
     """The campaign in a YAML file, checked whole.
 
-    ``diagnostic_names`` are the diagnostics that thresholds may be given for; None leaves
-    those names unchecked.
+    ``diagnostic_names`` are the diagnostics that thresholds may be given for.
 
     Raises
     ------
@@ -49,7 +49,7 @@ def _read(path: Path) -> bytes:
 
 
 def check_data(
-    data: Any, directory: Path, diagnostic_names: Collection[str] | None = None
+    data: Any, directory: Path, diagnostic_names: Collection[str] = tuple(DIAGNOSTICS)
 ) -> tuple[Campaign | None, list[Problem]]:
     """The campaign in plain data (None where its types are wrong) and all its problems, by section."""
     if not isinstance(data, dict):

@@ -19,9 +19,39 @@ Reference = Literal["RHF", "UHF", "ROHF", "RKS", "UKS", "CASSCF"]
 Correlation = Literal["none", "MP2", "CCSD", "CCSD(T)", "FCI", "NEVPT2"]
 Model = Literal["morse", "extended-rydberg"]
 
+NAME_PATTERN = r"^[A-Za-z0-9_][A-Za-z0-9._-]*$"
+LONGEST_NAME = 64
+# Checked in checks_names, which words it better; here only for editors that read the schema.
+_NAME: dict[str, Any] = {"pattern": NAME_PATTERN, "maxLength": LONGEST_NAME}
+_NAMES: dict[str, Any] = {"propertyNames": _NAME}
+
+
+def _or_null(schema: dict[str, Any]) -> None:
+    """Null stands for none in the file, so editors must not mark it."""
+    schema["enum"] = [*schema["enum"], None]
+    schema.pop("type", None)
+
+
+def _ref_or_null(schema: dict[str, Any]) -> None:
+    schema["anyOf"] = [{"$ref": schema.pop("$ref")}, {"type": "null"}]
+    schema["default"] = {}
+
+
+def _map_or_null(schema: dict[str, Any]) -> None:
+    schema["type"] = [schema["type"], "null"]
+    schema["default"] = {}
+
+
+def _null_is_empty(value: Any) -> Any:
+    return {} if value is None else value
+
 
 def _as_tuple(value: Any) -> Any:
     return tuple(value) if isinstance(value, list) else value
+
+
+def _all_models() -> list[Model]:
+    return ["morse", "extended-rydberg"]
 
 
 def _null_is_none(value: Any) -> Any:
@@ -40,9 +70,7 @@ AtomPair = Annotated[tuple[str, str], BeforeValidator(_as_tuple)]
 class Strict(BaseModel):
     """No unknown keys, no guessing of types, no infinite numbers."""
 
-    model_config = ConfigDict(
-        extra="forbid", strict=True, frozen=True, allow_inf_nan=False, use_attribute_docstrings=False
-    )
+    model_config = ConfigDict(extra="forbid", strict=True, frozen=True, allow_inf_nan=False)
 
 
 class Molecule(Strict):
@@ -119,7 +147,9 @@ class Level(Strict):
         None, description="Density functional, for RKS and UKS only.", examples=["B3LYP", "PBE0", "PBE,PBE"]
     )
     correlation: Annotated[Correlation, BeforeValidator(_null_is_none)] = Field(
-        "none", description="Correlation method on top of the reference; NEVPT2 on CASSCF only."
+        "none",
+        description="Correlation method on top of the reference; NEVPT2 on CASSCF only. Null means none.",
+        json_schema_extra=_or_null,
     )
     basis: Annotated[
         Annotated[str, Tag("<text>")] | Annotated[dict[str, str], Field(min_length=1), Tag("<map>")],
@@ -144,7 +174,7 @@ class Level(Strict):
         ),
     ] = Field(
         None,
-        description="Active space, for CASSCF only and needed there; auto: valence orbitals of the stretched bond.",
+        description="Active space, for CASSCF only and needed there; auto: valence orbitals of the bond.",
         examples=["auto", {"electrons": 2, "orbitals": 2}],
     )
     states: int = Field(1, ge=1, le=20, description="Number of states averaged with equal weights (CASSCF).")
@@ -232,11 +262,15 @@ class Threshold(Strict):
 class Diagnostics(Strict):
     """Overrides of thresholds, and diagnostics beyond the standard ones."""
 
-    thresholds: dict[str, Threshold] = Field(
-        default_factory=dict, description="Diagnostic name: {value, source}; the source is required."
+    thresholds: Annotated[dict[str, Threshold], BeforeValidator(_null_is_empty)] = Field(
+        default_factory=dict,
+        description="Diagnostic name: {value, source}; the source is required.",
+        json_schema_extra=_map_or_null,
     )
     include: list[str] = Field(
-        default_factory=list, description="Further diagnostics to compute, by name; some cost extra time."
+        default_factory=list,
+        description="Further diagnostics to compute, by name; some cost extra time.",
+        json_schema_extra={"default": []},
     )
 
 
@@ -244,9 +278,10 @@ class Fit(Strict):
     """How curves are fitted."""
 
     models: list[Model] = Field(
-        default_factory=lambda: ["morse", "extended-rydberg"],
+        default_factory=_all_models,
         min_length=1,
         description="Curve models to fit and to choose from.",
+        json_schema_extra={"default": ["morse", "extended-rydberg"]},
     )
 
 
@@ -257,14 +292,23 @@ class Campaign(Strict):
         alias="campaign",
         description="Name of the campaign and of its folder under results/.",
         examples=["water-bond"],
+        json_schema_extra=_NAME,
     )
-    molecules: dict[str, Molecule] = Field(min_length=1, description="Molecules by name.")
-    levels: dict[str, Level] = Field(min_length=1, description="Levels of theory by name.")
-    scans: dict[str, Scan] = Field(min_length=1, description="Scans by name.")
-    diagnostics: Diagnostics = Field(
-        default_factory=Diagnostics, description="Overrides of thresholds, each with a source."
+    molecules: dict[str, Molecule] = Field(
+        min_length=1, description="Molecules by name.", json_schema_extra=_NAMES
     )
-    fit: Fit = Field(default_factory=Fit, description="How curves are fitted.")
+    levels: dict[str, Level] = Field(
+        min_length=1, description="Levels of theory by name.", json_schema_extra=_NAMES
+    )
+    scans: dict[str, Scan] = Field(min_length=1, description="Scans by name.", json_schema_extra=_NAMES)
+    diagnostics: Annotated[Diagnostics, BeforeValidator(_null_is_empty)] = Field(
+        default_factory=Diagnostics,
+        description="Overrides of thresholds, each with a source.",
+        json_schema_extra=_ref_or_null,
+    )
+    fit: Annotated[Fit, BeforeValidator(_null_is_empty)] = Field(
+        default_factory=Fit, description="How curves are fitted.", json_schema_extra=_ref_or_null
+    )
     reference_level: str | None = Field(
         None, description="The level the others are compared with.", examples=["fci"]
     )

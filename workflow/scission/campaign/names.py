@@ -12,18 +12,13 @@ from functools import cache
 from pathlib import Path
 from typing import Any, Final
 
-ELEMENTS: Final[dict[str, int]] = {
-    symbol: number
-    for number, symbol in enumerate(
-        (
-            "H He Li Be B C N O F Ne Na Mg Al Si P S Cl Ar K Ca Sc Ti V Cr Mn Fe Co Ni Cu Zn Ga Ge As Se Br Kr "
-            "Rb Sr Y Zr Nb Mo Tc Ru Rh Pd Ag Cd In Sn Sb Te I Xe Cs Ba La Ce Pr Nd Pm Sm Eu Gd Tb Dy Ho Er Tm Yb "
-            "Lu Hf Ta W Re Os Ir Pt Au Hg Tl Pb Bi Po At Rn Fr Ra Ac Th Pa U Np Pu Am Cm Bk Cf Es Fm Md No Lr Rf "
-            "Db Sg Bh Hs Mt Ds Rg Cn Nh Fl Mc Lv Ts Og"
-        ).split(),
-        1,
-    )
-}
+_SYMBOLS = """
+H He Li Be B C N O F Ne Na Mg Al Si P S Cl Ar K Ca Sc Ti V Cr Mn Fe Co Ni Cu Zn Ga Ge As Se Br Kr
+Rb Sr Y Zr Nb Mo Tc Ru Rh Pd Ag Cd In Sn Sb Te I Xe Cs Ba La Ce Pr Nd Pm Sm Eu Gd Tb Dy Ho Er Tm Yb
+Lu Hf Ta W Re Os Ir Pt Au Hg Tl Pb Bi Po At Rn Fr Ra Ac Th Pa U Np Pu Am Cm Bk Cf Es Fm Md No Lr Rf
+Db Sg Bh Hs Mt Ds Rg Cn Nh Fl Mc Lv Ts Og
+"""
+ELEMENTS: Final[dict[str, int]] = {symbol: number for number, symbol in enumerate(_SYMBOLS.split(), 1)}
 """Atomic number by element symbol."""
 
 
@@ -72,11 +67,11 @@ def basis_on(basis: str, symbol: str) -> AtomBasis | None:
     None where there is no such basis for the element.
     """
     own = known()["ecp_of"].get(normalised(basis), basis)
-    for table, key, ecp in (("pyscf", normalised(basis), own), ("bse", _exchange_key(basis), basis)):
+    for table, key in (("pyscf", normalised(basis)), ("bse", _exchange_key(basis))):
         for size, symbols in known()[table].get(key, {}).items():
             if symbol in symbols.split():
                 functions, _, core = size.partition("+ecp")
-                return AtomBasis(int(functions), int(core or 0), ecp if core else None)
+                return AtomBasis(int(functions), int(core or 0), own if core else None)
     return None
 
 

@@ -19,7 +19,9 @@ class Parts:
     """Well-formed blocks by name, and the file's content for the names that were declared at all.
 
     A scan of a molecule that is there but malformed is no second problem, so references
-    are looked up among all declared names.
+    are looked up among all declared names.  ``sound_molecules`` are those whose charge and
+    spin fit, so that levels are not held against a wrong number of electrons;
+    ``crowded_molecules`` have atoms on top of each other, which is one problem, not one a scan.
     """
 
     data: Mapping[str, Any]
@@ -30,6 +32,8 @@ class Parts:
     scans: dict[str, Scan] = field(default_factory=dict)
     diagnostics: Diagnostics = field(default_factory=Diagnostics)
     fit: Fit = field(default_factory=Fit)
+    sound_molecules: set[str] = field(default_factory=set)
+    crowded_molecules: set[str] = field(default_factory=set)
 
     def declared(self, section: str) -> list[str]:
         """Names in a section of the file, well-formed or not."""
@@ -45,8 +49,8 @@ def read_parts(data: Mapping[str, Any], directory: Path) -> tuple[Parts, list[Pr
         parts = Parts(data, directory)
         for section, model in (("molecules", Molecule), ("levels", Level), ("scans", Scan)):
             setattr(parts, section, _well_formed(parts, section, model))
-        parts.diagnostics = _block(data.get("diagnostics"), Diagnostics) or parts.diagnostics
-        parts.fit = _block(data.get("fit"), Fit) or parts.fit
+        parts.diagnostics = _block(data.get("diagnostics") or {}, Diagnostics) or parts.diagnostics
+        parts.fit = _block(data.get("fit") or {}, Fit) or parts.fit
         return parts, problems_of(error, Campaign, ())
     blocks = (campaign.molecules, campaign.levels, campaign.scans, campaign.diagnostics, campaign.fit)
     return Parts(data, directory, campaign, *blocks), []

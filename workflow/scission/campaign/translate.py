@@ -1,7 +1,8 @@
 """Pydantic's findings as problems in the words of a campaign file."""
 
 from collections.abc import Mapping
-from typing import Any
+from types import UnionType
+from typing import Annotated, Any, Union, get_args, get_origin
 
 from pydantic import BaseModel, ValidationError
 
@@ -29,7 +30,8 @@ def problems_of(error: ValidationError, model: type[BaseModel], path: tuple[str 
 
 def _problem(finding: Mapping[str, Any], model: type[BaseModel], path: tuple[str | int, ...]) -> Problem:
     location = (*path, *(part for part in finding["loc"] if not str(part).startswith("<")))
-    kind, value, context = finding["type"], finding["input"], finding.get("ctx", {})
+    kind, context = finding["type"], finding.get("ctx", {})
+    value = list(finding["input"]) if isinstance(finding["input"], tuple) else finding["input"]
     if kind == "missing" and location and isinstance(location[-1], int):
         return Problem(dotted(location[:-1]), value, "must be a list of two")
     if kind == "missing":
@@ -51,35 +53,42 @@ def _rule(kind: str, context: Mapping[str, Any], message: str) -> str:
     if kind in ("too_short", "string_too_short"):
         return "is empty, and must hold something"
     if kind == "too_long":
-        return f"holds more than {context['max_length']} entries"
+        return "must be a list of two"
     return _WANTED.get(kind, message)
 
 
 def _keys_at(model: type[BaseModel], location: tuple[str | int, ...]) -> list[str]:
     """Keys of the block at ``location``, following annotations down from ``model``."""
-    block: Any = model
+    members: list[Any] = [model]
     for part in location:
-        block = _step(block, part)
-    return [field.alias or name for name, field in block.model_fields.items()]
+        if not str(part).startswith("<"):
+            members = _step(members, part)
+    blocks = [member for member in members if _is_model(member)]
+    return [key for block in blocks for key in _fields(block)]
 
 
-def _step(block: Any, part: str | int) -> Any:
-    """The type one step down: a field's, or the model among a container's or a union's types."""
-    if isinstance(block, type) and issubclass(block, BaseModel):
-        fields = {field.alias or name: field.annotation for name, field in block.model_fields.items()}
-        annotation = fields[str(part)]
-        return annotation if _is_model(annotation) else _inner_model(annotation)
-    return block if _is_model(block) else _inner_model(block)
+def _step(members: list[Any], part: str | int) -> list[Any]:
+    """Types that may stand one step down from one of the types ``members``."""
+    for member in members:
+        if _is_model(member) and part in _fields(member):
+            return _members(_fields(member)[str(part)])
+        if get_origin(member) in (dict, list):
+            return _members(get_args(member)[-1])
+    return []
+
+
+def _members(annotation: Any) -> list[Any]:
+    """The single types inside unions and annotations."""
+    if get_origin(annotation) is Annotated:
+        return _members(get_args(annotation)[0])
+    if get_origin(annotation) in (Union, UnionType):
+        return [member for part in get_args(annotation) for member in _members(part)]
+    return [annotation]
+
+
+def _fields(block: type[BaseModel]) -> dict[str, Any]:
+    return {field.alias or name: field.annotation for name, field in block.model_fields.items()}
 
 
 def _is_model(annotation: Any) -> bool:
     return isinstance(annotation, type) and issubclass(annotation, BaseModel)
-
-
-def _inner_model(annotation: Any) -> Any:
-    """The first model type inside ``dict[str, X]``, ``X | None`` or an annotated union."""
-    for argument in getattr(annotation, "__args__", ()):
-        found = argument if _is_model(argument) else _inner_model(argument)
-        if found is not None:
-            return found
-    return None

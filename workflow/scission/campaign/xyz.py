@@ -40,7 +40,7 @@ def parse_atoms(text: str, unit: str, path: str = "atoms") -> Atoms:
         problems += found
     factor = units.ANGSTROM_IN_BOHR if unit == "angstrom" else 1.0
     positions = np.array(rows, dtype=np.float64).reshape(-1, 3) * factor
-    return tuple(symbols), positions, problems + _far(positions, path)
+    return tuple(symbols), positions, problems or _far(positions, path)
 
 
 def _atom(line: str, path: str) -> tuple[str, list[float], list[Problem]]:
@@ -77,7 +77,7 @@ def read_xyz(name: str, directory: Path, path: str) -> Atoms:
     body = rest.partition("\n")[2].rstrip()
     count, lines = int(first), len(body.splitlines())
     if count != lines:
-        rule = f"is the number of atoms in the first line of {name}, but {lines} lines of atoms follow the comment"
+        rule = f"is the number of atoms in the first line of {name}, but {lines} lines of atoms follow"
         return *nothing, [Problem(path, count, rule)]
     return parse_atoms(body, "angstrom", path)
 

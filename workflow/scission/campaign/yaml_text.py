@@ -130,7 +130,8 @@ class _Builder:
         self.problems.append(Problem(dotted(path), shown, rule))
         return None
 
-    def scalar(self, node: yaml.ScalarNode, path: tuple[str | int, ...]) -> Any:
+    def scalar(self, node: yaml.Node, path: tuple[str | int, ...]) -> Any:
+        assert isinstance(node, yaml.ScalarNode)
         self.check_tag(node, "str", path)
         return node.value if node.style is not None else plain_value(node.value)
 

@@ -23,9 +23,11 @@ Cs 2.44 Ba 2.15 La 2.07 Ce 2.04 Pr 2.03 Nd 2.01 Pm 1.99 Sm 1.98 Eu 1.98 Gd 1.96 
 Er 1.89 Tm 1.90 Yb 1.87 Lu 1.87 Hf 1.75 Ta 1.70 W 1.62 Re 1.51 Os 1.44 Ir 1.41 Pt 1.36 Au 1.36 Hg 1.32
 Tl 1.45 Pb 1.46 Bi 1.48 Po 1.40 At 1.50 Rn 1.50 Fr 2.60 Ra 2.21 Ac 2.15 Th 2.06 Pa 2.00 U 1.96 Np 1.90
 Pu 1.87 Am 1.80 Cm 1.69
-""".split()
+"""
 
-RADII_ANGSTROM: dict[str, float] = dict(zip(_TABLE[::2], map(float, _TABLE[1::2]), strict=True))
+RADII_ANGSTROM: dict[str, float] = dict(
+    zip(_TABLE.split()[::2], map(float, _TABLE.split()[1::2]), strict=True)
+)
 
 
 def covalent_radius(symbol: str) -> float:
@@ -37,6 +39,6 @@ def bonded(symbols: tuple[str, ...], positions: NDArray[np.float64]) -> NDArray[
     """Which pairs are bonded, shape (n_atoms, n_atoms); positions (n_atoms, 3) in bohr."""
     radii = np.array([covalent_radius(symbol) for symbol in symbols])
     distances = np.linalg.norm(positions[:, None] - positions[None, :], axis=2)
-    pairs = distances <= BOND_FACTOR * (radii[:, None] + radii[None, :])
+    pairs: NDArray[np.bool_] = distances <= BOND_FACTOR * (radii[:, None] + radii[None, :])
     np.fill_diagonal(pairs, False)
     return pairs
