@@ -15,4 +15,4 @@ rule analyse:
     params:
         physics_version=PLAN["physics_version"],
     shell:
-        f"{PYTHON} {SCRIPTS}/analyse.py --results . > {{log}} 2>&1"
+        f"{PYTHON} {SCRIPTS}/analyse.py --results . --campaign {CAMPAIGN} > {{log}} 2>&1"

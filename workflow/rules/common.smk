@@ -7,7 +7,7 @@ from pathlib import Path
 from snakemake.exceptions import WorkflowError
 
 from scission.execution.engine import ATTEMPTS
-from scission.execution.layout import PROJECT
+from scission.execution.layout import PROJECT, read_json
 from scission.execution.planning import PlanMissingError, plan_options, refresh
 
 
@@ -28,8 +28,11 @@ def read_plan():
 
 LAYOUT, PLAN = read_plan()
 JOBS = {entry["job"]: entry for entry in PLAN["jobs"]}
-SCRIPTS = shlex.quote(str(PROJECT / "scripts"))
-PYTHON = shlex.quote(sys.executable)
+CAMPAIGN, PYTHON, SCRIPTS = (
+    shlex.quote(str(path)).replace("{", "{{").replace("}", "}}")
+    for path in (workflow.configfiles[-1], sys.executable, PROJECT / "scripts")
+)
+GRANTS = read_json(LAYOUT.grants) or {}
 SALVAGE = bool(config.get("salvage"))  # gather what there is, compute nothing
 
 
@@ -50,13 +53,13 @@ def needed(wildcards):
 
 
 def memory(wildcards, attempt):
-    """Return the memory of a job in MB: the forecast's, then more."""
-    return JOBS[wildcards.job]["mem_mb"] * attempt
+    """Return the memory of a job in MB: the forecast's, more in a retry that asks for it, and in a second attempt."""
+    return int(JOBS[wildcards.job]["mem_mb"] * GRANTS.get(wildcards.job, (1, 1))[1] * attempt)
 
 
 def runtime(wildcards, attempt):
-    """Return the run time of a job in minutes: the forecast's, then more."""
-    return JOBS[wildcards.job]["runtime_min"] * attempt
+    """Return the run time of a job in minutes, growing in the same way."""
+    return int(JOBS[wildcards.job]["runtime_min"] * GRANTS.get(wildcards.job, (1, 1))[0] * attempt)
 
 
 WORKER = (

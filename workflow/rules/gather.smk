@@ -15,4 +15,4 @@ rule gather:
     params:
         physics_version=PLAN["physics_version"],
     shell:
-        f"{PYTHON} {SCRIPTS}/gather.py --results . --out {{output}} > {{log}} 2>&1"
+        f"{PYTHON} {SCRIPTS}/gather.py --results . --campaign {CAMPAIGN} > {{log}} 2>&1"

@@ -15,4 +15,4 @@ rule report:
     params:
         physics_version=PLAN["physics_version"],
     shell:
-        f"{PYTHON} {SCRIPTS}/report.py --results . > {{log}} 2>&1"
+        f"{PYTHON} {SCRIPTS}/report.py --results . --campaign {CAMPAIGN} > {{log}} 2>&1"

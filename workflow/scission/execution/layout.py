@@ -45,6 +45,11 @@ class Layout:
         return self.folder / "retries" / f"{key}.json"
 
     @property
+    def grants(self) -> Path:
+        """Factors on the time and memory of jobs that a retry asked for."""
+        return self.folder / "retries" / "grants.json"
+
+    @property
     def run_file(self) -> Path:
         """Who runs the campaign at present."""
         return self.folder / "run.json"

@@ -1,0 +1,61 @@
+"""The steps after the calculations: gather, tables, report; none of them computes chemistry."""
+
+from __future__ import annotations
+
+from pathlib import Path
+from typing import Any
+
+from scission.analysis import Analysis, analyse
+from scission.campaign import load_campaign
+from scission.diagnostics import DIAGNOSTICS
+from scission.execution.layout import Layout, read_json
+from scission.execution.remedies import next_remedy
+from scission.plan import Point, make_plan
+from scission.records import Store
+from scission.records.gather import gather
+from scission.report import write_report
+from scission.tables import write_tables
+
+
+def gather_campaign(campaign_file: Path, folder: Path) -> None:
+    """Write campaign.h5 below ``folder`` (results/<campaign>).
+
+    Raises:
+        CampaignError: the campaign file has become wrong since the plan was made.
+        OSError: a record cannot be read, or the file not be written.
+    """
+    points, analysis = _analysed(campaign_file, folder)
+    out = folder / "campaign.h5"
+    gather(points, Store(folder), out, analysis.provenance, DIAGNOSTICS, analysis.flags)
+
+
+def tabulate_campaign(campaign_file: Path, folder: Path) -> None:
+    """Write tables/ and failures.csv below ``folder``; tell when records of different make are mixed.
+
+    Raises:
+        CampaignError: the campaign file has become wrong since the plan was made.
+        OSError: a record cannot be read, or a table not be written.
+    """
+    _, analysis = _analysed(campaign_file, folder)
+    write_tables(analysis.frames, folder)
+    for line in analysis.mixed:
+        print(f"mixed records: {line}", flush=True)
+
+
+def show_campaign(campaign_file: Path, folder: Path) -> None:
+    """Write figures/ and report.html below ``folder``.
+
+    Raises:
+        CampaignError: the campaign file has become wrong since the plan was made.
+        OSError: a record cannot be read, or a file not be written.
+    """
+    _, analysis = _analysed(campaign_file, folder)
+    write_report(analysis, folder)
+
+
+def _analysed(campaign_file: Path, folder: Path) -> tuple[tuple[Point, ...], Analysis]:
+    campaign = load_campaign(campaign_file, DIAGNOSTICS)
+    points = make_plan(campaign).points
+    index = read_json(Layout(folder).plan / "plan.json") or {}
+    facts: dict[str, Any] = {name: index[name] for name in ("physics_version", "digest") if name in index}
+    return points, analyse(points, campaign, Store(folder), facts, next_remedy)
