@@ -1,0 +1,167 @@
+"""The state of a chain while it is walked: its nodes, their records, and the tasks it can ask for."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Iterator
+from dataclasses import dataclass
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+from scission.chemistry.compare import overlap_and_swap
+from scission.plan.identity import reference_key
+from scission.records.store import Record, Store
+
+SMOOTH = 0.9
+"""Neighbours whose occupied (or active) spaces overlap less than this are not the same state for sure."""
+
+LOWER = 1e-6
+"""By how much (hartree) a solution must lie lower to count as lower: ten times the tightest agreement of
+energies converged from different starts."""
+
+
+@dataclass
+class Node:
+    """One geometry of the chain; auxiliary ones bridge gaps and are no points of the campaign."""
+
+    key: str
+    coordinate: float
+    positions: NDArray[np.float64]
+    auxiliary: bool
+
+
+class ChainState:
+    """Nodes of one chain in the order of the coordinate, with the records they have so far."""
+
+    def __init__(self, chain: dict[str, Any], store: Store, run: Callable[[dict[str, Any]], dict[str, Any]]) -> None:
+        self.chain = chain
+        self.store = store
+        self._run = run
+        self._records: dict[str, Record | None] = {}
+        self._again = set(chain.get("again", ()))
+        self._touched: set[str] = set()
+        self._before: dict[str, float] = {}
+        self.notes: dict[str, dict[str, str]] = {}
+        self.nodes = [
+            Node(n["key"], n["coordinate"], np.array(n["positions"]), n["auxiliary"]) for n in chain["nodes"]
+        ]
+        self.start = self.nodes[chain["start"]]
+        self.stretched = self.nodes[chain["stretched"]]
+        for node in self.nodes:
+            if self.good(node):
+                self._before[node.key] = self.energy(node)
+
+    @property
+    def unrestricted(self) -> bool:
+        """Whether the reference has different orbitals for different spins."""
+        return self.chain["spec"]["reference"] in ("UHF", "UKS")
+
+    @property
+    def active(self) -> bool:
+        """Whether the reference has an active space."""
+        return self.chain["spec"]["reference"] == "CASSCF"
+
+    @property
+    def lowered(self) -> dict[str, float]:
+        """Energies (hartree, negative) by which records that stood before the walk were lowered."""
+        changes = {n.key: self.energy(n) - self._before[n.key] for n in self.nodes if n.key in self._before}
+        return {key: step for key, step in changes.items() if step < -LOWER}
+
+    def record(self, node: Node) -> Record | None:
+        """Return the node's record, or ``None``."""
+        if node.key not in self._records:
+            self._records[node.key] = self.store.read("reference", node.key)
+        return self._records[node.key]
+
+    def good(self, node: Node) -> bool:
+        """Whether the node has a converged record."""
+        record = self.record(node)
+        return record is not None and record.status == "converged"
+
+    def settled(self, node: Node) -> bool:
+        """Whether the node needs no first calculation: it has a record and nobody asked for another."""
+        return self.record(node) is not None and node.key not in self._again
+
+    def energy(self, node: Node) -> float:
+        """Return the node's energy, hartree; infinite where it has none."""
+        record = self.record(node)
+        return float(record.scalars["energy"]) if record is not None and self.good(node) else float("inf")
+
+    def overlap(self, a: Node, b: Node) -> float:
+        """Return how alike the states of two nodes are, 0 to 1, up to an exchange of spins."""
+        return self.overlap_and_swap(a, b)[0]
+
+    def overlap_and_swap(self, a: Node, b: Node) -> tuple[float, bool]:
+        """Return the same and whether alpha and beta have to be exchanged for it."""
+        first, second = self.record(a), self.record(b)
+        if first is None or second is None or not (self.good(a) and self.good(b)):
+            return 0.0, False
+        return overlap_and_swap(first, second)
+
+    def solve(self, node: Node, starts: list[dict[str, Any]], **options: Any) -> bool:
+        """Compute a node from ``starts``; return whether it now has a converged record.
+
+        ``options`` are those of :func:`scission.chemistry.establish.establish_reference`.
+        """
+        self._again.discard(node.key)
+        self._task(node, {"kind": "reference", "starts": starts, **options})
+        return self.good(node)
+
+    def swap(self, node: Node) -> None:
+        """Exchange alpha and beta of a node's record."""
+        self._task(node, {"kind": "swap"})
+
+    def finish(self) -> None:
+        """Evaluate diagnostics of the nodes that are points and lack them or have changed."""
+        for node in self.nodes:
+            record = self.record(node)
+            if node.auxiliary or record is None or not self.good(node):
+                continue
+            evaluated = bool(record.diagnostics or record.absent)
+            if not evaluated or node.key in self._touched or node.key in self.notes:
+                self._task(node, {"kind": "finish", "notes": self.notes.get(node.key, {})})
+
+    def outward(self, origin: Node) -> Iterator[tuple[Node, Node]]:
+        """Yield (node, its neighbour nearer to ``origin``) on both sides, nearest first."""
+        at = self.nodes.index(origin)
+        ordered = list(self.nodes)
+        for i in range(at + 1, len(ordered)):
+            yield ordered[i], ordered[i - 1]
+        for i in range(at - 1, -1, -1):
+            yield ordered[i], ordered[i + 1]
+
+    def pairs(self) -> list[tuple[Node, Node]]:
+        """Return neighbouring nodes in the order of the coordinate."""
+        return list(zip(self.nodes, self.nodes[1:], strict=False))
+
+    def good_towards(self, node: Node, origin: Node) -> Node | None:
+        """Return the nearest node with a converged record on the way from ``node`` to ``origin``, else beyond."""
+        at, goal = self.nodes.index(node), self.nodes.index(origin)
+        way = self.nodes[at + 1 :] if goal > at else self.nodes[:at][::-1]
+        return next((n for n in way if self.good(n)), None)
+
+    def between(self, a: Node, b: Node) -> Node:
+        """Add an auxiliary node half way between two neighbours and return it."""
+        positions = (a.positions + b.positions) / 2.0
+        chain = self.chain
+        key = reference_key(chain["molecule"], chain["spec"], chain["bonds"], positions)
+        node = Node(key, (a.coordinate + b.coordinate) / 2.0, positions, True)
+        self.nodes.insert(max(self.nodes.index(a), self.nodes.index(b)), node)
+        return node
+
+    def say(self, node: Node, subject: str, words: str) -> None:
+        """Keep a remark for the node's record."""
+        self.notes.setdefault(node.key, {})[subject] = words
+
+    def _task(self, node: Node, what: dict[str, Any]) -> None:
+        chain = self.chain
+        common = {k: chain[k] for k in ("molecule", "spec", "bonds", "fragments")}
+        task = {"key": node.key, "positions": node.positions.tolist(), **common, **what}
+        old = self._records.get(node.key)
+        self._run(task)
+        self._records.pop(node.key, None)
+        new = self.record(node)
+        changed = old is None or new is None or new.stamp != old.stamp or what["kind"] == "swap"
+        if what["kind"] != "finish" and changed:
+            self._touched.add(node.key)
