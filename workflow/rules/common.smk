@@ -54,12 +54,18 @@ def needed(wildcards):
 
 def memory(wildcards, attempt):
     """Return the memory of a job in MB: the forecast's, more in a retry that asks for it, and in a second attempt."""
-    return int(JOBS[wildcards.job]["mem_mb"] * GRANTS.get(wildcards.job, (1, 1))[1] * attempt)
+    return int(
+        JOBS[wildcards.job]["mem_mb"] * GRANTS.get(wildcards.job, (1, 1))[1] * attempt
+    )
 
 
 def runtime(wildcards, attempt):
     """Return the run time of a job in minutes, growing in the same way."""
-    return int(JOBS[wildcards.job]["runtime_min"] * GRANTS.get(wildcards.job, (1, 1))[0] * attempt)
+    return int(
+        JOBS[wildcards.job]["runtime_min"]
+        * GRANTS.get(wildcards.job, (1, 1))[0]
+        * attempt
+    )
 
 
 WORKER = (
