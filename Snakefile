@@ -24,7 +24,11 @@ include: "workflow/rules/report.smk"
 rule all:
     default_target: True
     input:
+        "campaign.h5",
+        "tables/points.csv",
+        "failures.csv",
         "report.html",
+        "summary.txt",
     localrule: True
 
 

@@ -145,6 +145,7 @@ def test_a_reference_job_walks_its_chains_and_publishes(tmp_path):
 
     def walk(chain, store, run):  # noqa: ARG001
         run({"kind": "reference", "key": "ref", "memory_mb": 2000.0})
+        return {"name": chain["name"], "crossings": []}
 
     assert run_job(tmp_path, job, runner="drill", walk=walk) == 0
     assert record(tmp_path, "aa").reference_stamp == "stamp-ref-1"

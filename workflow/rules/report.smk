@@ -1,10 +1,10 @@
 rule report:
     """Pictures of all scans and the page to look at."""
     input:
-        "tables/points.csv",
-        "failures.csv",
+        "campaign.h5",
     output:
         "report.html",
+        "summary.txt",
     log:
         "logs/report.log",
     benchmark:

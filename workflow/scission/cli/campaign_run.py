@@ -110,9 +110,7 @@ class Session:
             tell(f"all of it: {self.layout.engine_log}")
 
     def _sum_up(self) -> int:
-        from scission.report import summary_text
-
-        print(summary_text(self.layout.folder), flush=True)
+        print(self.layout.summary.read_text(encoding="utf-8"), flush=True)
         return POINTS_FAILED if has_failures(self.layout.failures) else 0
 
     def _tick(self) -> None:

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from collections import defaultdict
+from collections.abc import Iterable
 from pathlib import Path
 from typing import Any
 
@@ -12,9 +14,12 @@ from scission.execution.layout import Layout, read_json
 from scission.execution.remedies import next_remedy
 from scission.plan import Point, make_plan
 from scission.records import Store
+from scission.records.atomic import write_whole
 from scission.records.gather import gather
-from scission.report import write_report
+from scission.report import summary_text, write_report
 from scission.tables import write_tables
+
+_TOLD = ("from_angstrom", "to_angstrom", "overlap", "energy_step_hartree", "what")
 
 
 def gather_campaign(campaign_file: Path, folder: Path) -> None:
@@ -43,7 +48,7 @@ def tabulate_campaign(campaign_file: Path, folder: Path) -> None:
 
 
 def show_campaign(campaign_file: Path, folder: Path) -> None:
-    """Write figures/ and report.html below ``folder``.
+    """Write figures/, report.html and summary.txt, what the terminal shows at the end, below ``folder``.
 
     Raises:
         CampaignError: the campaign file has become wrong since the plan was made.
@@ -51,6 +56,7 @@ def show_campaign(campaign_file: Path, folder: Path) -> None:
     """
     _, analysis = _analysed(campaign_file, folder)
     write_report(analysis, folder)
+    write_whole(Layout(folder).summary, summary_text(analysis, folder).encode("utf-8"))
 
 
 def _analysed(campaign_file: Path, folder: Path) -> tuple[tuple[Point, ...], Analysis]:
@@ -58,4 +64,22 @@ def _analysed(campaign_file: Path, folder: Path) -> tuple[tuple[Point, ...], Ana
     points = make_plan(campaign).points
     index = read_json(Layout(folder).plan / "plan.json") or {}
     facts: dict[str, Any] = {name: index[name] for name in ("physics_version", "digest") if name in index}
-    return points, analyse(points, campaign, Store(folder), facts, next_remedy)
+    jobs = [entry["job"] for entry in index.get("jobs", [])]
+    return points, analyse(
+        points, campaign, Store(folder), facts, next_remedy, crossings(points, folder, jobs)
+    )
+
+
+def crossings(
+    points: Iterable[Point], folder: Path, jobs: Iterable[str]
+) -> dict[tuple[str, str], list[dict[str, Any]]]:
+    """Return, by scan and level, the places where the jobs found that a reference changes its state."""
+    told = [read_json(Layout(folder).job_done(job)) or {} for job in jobs]
+    found = [c for summary in told for chain in summary.get("chains", []) for c in chain.get("crossings", [])]
+    members: dict[tuple[str, str], set[str]] = defaultdict(set)
+    for point in points:
+        members[point.scan, point.level].add(point.reference_key)
+    return {
+        group: [{name: c[name] for name in _TOLD} for c in found if {c["from_key"], c["to_key"]} <= keys]
+        for group, keys in members.items()
+    }

@@ -45,6 +45,11 @@ class Layout:
         return self.folder / "retries" / f"{key}.json"
 
     @property
+    def summary(self) -> Path:
+        """What the terminal shows at the end of a run."""
+        return self.folder / "summary.txt"
+
+    @property
     def grants(self) -> Path:
         """Factors on the time and memory of jobs that a retry asked for."""
         return self.folder / "retries" / "grants.json"

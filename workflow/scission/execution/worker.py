@@ -28,7 +28,7 @@ _GUARD_MB = 200.0
 
 Task = dict[str, Any]
 Run = Callable[[Task], dict[str, Any]]
-Walk = Callable[[dict[str, Any], Ledger, Run], object]
+Walk = Callable[[dict[str, Any], Ledger, Run], dict[str, Any]]
 
 
 @dataclass(frozen=True)
@@ -64,6 +64,7 @@ class Attempt:
     starts: dict[str, int] = field(default_factory=dict)
     requests: dict[str, dict[str, Any]] = field(default_factory=dict)
     results: dict[str, str] = field(default_factory=dict)
+    chains: list[dict[str, Any]] = field(default_factory=list)
     total: int = 0
     escalate: bool = False
     physics_version: int | None = None
@@ -110,7 +111,7 @@ class Attempt:
             "attempt": self.starts[key],
             "job_attempt": self.number,
             "request": request.get("id", ""),
-            "remedy": request.get("remedy") or item.get("remedy", ""),
+            "remedy": item.get("remedy") or request.get("remedy", ""),
             "physics_version": self.physics_version,
         }
 
@@ -177,7 +178,8 @@ def run_job(
         work.close_requests()
     if work.escalate and not last_attempt:
         return TRY_AGAIN
-    write_json(layout.job_done(job), work.summary() | {"stage": plan["stage"], "finished": now()})
+    told = {"stage": plan["stage"], "chains": work.chains, "finished": now()}
+    write_json(layout.job_done(job), work.summary() | told)
     return 0
 
 
@@ -200,11 +202,19 @@ def _chemistry_walk() -> Walk:
 def _walk_chains(plan: dict[str, Any], work: Attempt, walk: Walk) -> None:
     store = Ledger(work.layout.folder, {})
     for chain in plan["chains"]:
-        walk(chain, store, work.run)
+        again = [node["key"] for node in chain.get("nodes", []) if _asked(store, node["key"], work)]
+        told = walk({**chain, "again": again}, store, work.run)
+        work.chains.append(told)
     for key in plan["reference_keys"]:
         record = store.read("reference", key, arrays=False)
         if record is not None:
             work.keep(record)
+
+
+def _asked(store: Ledger, key: str, work: Attempt) -> bool:
+    """Whether a reference that has a record must be computed again."""
+    record = store.read("reference", key, arrays=False)
+    return record is not None and needs_again(record, "", work.number, pending_request(work.layout, key))
 
 
 def _publish(items: list[Task], work: Attempt) -> None:
@@ -239,8 +249,9 @@ def _examine(item: Task, work: Attempt) -> tuple[str, Task]:
         return "nothing", task
     if record is None:
         return "first", task
-    if needs_again(record, reference.stamp, work.number, pending_request(work.layout, item["key"])):
-        return "again", {"remedy": record.remedy, **task}
+    request = pending_request(work.layout, item["key"])
+    if needs_again(record, reference.stamp, work.number, request):
+        return "again", task if request else {"remedy": record.remedy, **task}
     work.keep(record)
     return "nothing", task
 
