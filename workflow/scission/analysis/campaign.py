@@ -1,0 +1,148 @@
+"""A whole campaign: every scan analysed, every table built."""
+
+from __future__ import annotations
+
+from collections import defaultdict
+from collections.abc import Callable, Iterable, Mapping
+from dataclasses import dataclass
+from typing import Any
+
+import pandas as pd
+
+from scission.analysis import rows
+from scission.analysis.provenance import Sources, provenance
+from scission.analysis.scan import Bond, LevelResult, conclude
+from scission.campaign import Campaign
+from scission.geometry import build_path
+from scission.masses import reduced_mass
+from scission.records import Planned, Record, Store, recall
+from scission.tables import COLUMNS, frame
+from scission.thresholds import Override, Thresholds, resolve
+
+_ARRAYS = ("state_energies", "state_labels")
+
+Crossings = Mapping[tuple[str, str], list[dict[str, Any]]]
+
+
+@dataclass(frozen=True)
+class Analysis:
+    """What a campaign came to.
+
+    Attributes:
+        campaign: the campaign.
+        frames: table name to frame, see ``scission.tables.COLUMNS``.
+        coordinates: scan to the name of its coordinate, without unit.
+        provenance: name to text or number.
+        mixed: what decides numbers and is not the same in all records; empty if all is one.
+    """
+
+    campaign: Campaign
+    frames: dict[str, pd.DataFrame]
+    coordinates: dict[str, str]
+    provenance: dict[str, Any]
+    mixed: list[str]
+
+    @property
+    def flags(self) -> dict[tuple[str, str, int], tuple[str, str]]:
+        """(scan, level, number) to (flag, reasons), as ``records.gather`` takes them."""
+        table = self.frames["points"]
+        where = zip(table.scan, table.level, table.point, strict=True)
+        verdicts = zip(table.flag, table.reasons, strict=True)
+        return {(s, lv, int(n)): verdict for (s, lv, n), verdict in zip(where, verdicts, strict=True)}
+
+    @property
+    def n_failures(self) -> int:
+        """Number of points without a converged result."""
+        return len(self.frames["failures"])
+
+
+def analyse(
+    points: Iterable[Planned],
+    campaign: Campaign,
+    store: Store,
+    facts: Mapping[str, Any] | None = None,
+    suggest: Callable[[Record], str] | None = None,
+    crossings: Crossings | None = None,
+) -> Analysis:
+    """Join plan, records, verdicts and fits into tables; reads records, computes no chemistry.
+
+    Args:
+        points: every planned point, in any order.
+        campaign: for levels, molecules, thresholds and fit models.
+        store: the records.
+        facts: of the plan, for the provenance: ``physics_version``, ``digest``.
+        suggest: remedy to try next for a record that is not converged; None or "" leaves it to the
+            ladder of remedies.
+        crossings: (scan, level) to rows of the crossings table, without scan and level.
+
+    Raises:
+        OSError: a record is there but cannot be read.
+    """
+    tables: dict[str, list[dict[str, Any]]] = {name: [] for name in COLUMNS}
+    sources = Sources()
+    thresholds = resolve(_overrides(campaign))
+    coordinates = {}
+    for scan, members in _by_scan(points).items():
+        coordinates[scan] = next(iter(members.values()))[0].names[0]
+        results = [_load(name, group, campaign, store, sources) for name, group in members.items()]
+        molecule = campaign.molecules[campaign.scans[scan].molecule]
+        bond = _bond(campaign, scan)
+        conclude(results, molecule.multiplicity, thresholds, bond, campaign.fit.models)
+        for result in results:
+            _add(tables, scan, result, molecule.multiplicity, thresholds, bond)
+            tables["failures"] += rows.failure_rows(result, suggest or _no_remedy)
+            tables["crossings"] += rows.crossing_rows(result, crossings or {})
+    frames = {name: frame(name, content) for name, content in tables.items()}
+    made = provenance(campaign, facts or {}, sources)
+    return Analysis(campaign, frames, coordinates, made, sources.mixed())
+
+
+def _no_remedy(_record: Record) -> str:
+    return ""
+
+
+def _by_scan(points: Iterable[Planned]) -> dict[str, dict[str, list[Planned]]]:
+    scans: dict[str, dict[str, list[Planned]]] = defaultdict(lambda: defaultdict(list))
+    for point in points:
+        scans[point.scan][point.level].append(point)
+    return scans
+
+
+def _load(
+    name: str, points: list[Planned], campaign: Campaign, store: Store, sources: Sources
+) -> LevelResult:
+    ordered = sorted(points, key=lambda point: point.number)
+    records = [recall(store, point.key, _ARRAYS) for point in ordered]
+    for record in records:
+        sources.add(record)
+    return LevelResult(name, campaign.levels[name], ordered, records)
+
+
+def _overrides(campaign: Campaign) -> dict[str, Override]:
+    given = campaign.diagnostics.thresholds
+    return {name: Override(item.value, item.source) for name, item in given.items()}
+
+
+def _bond(campaign: Campaign, scan: str) -> Bond:
+    molecule = campaign.molecules[campaign.scans[scan].molecule]
+    first, second = build_path(molecule, campaign.scans[scan]).fragments
+    masses = [[molecule.symbols[atom] for atom in fragment] for fragment in (first, second)]
+    return Bond(reduced_mass(*masses), len(molecule.symbols) == 2)
+
+
+def _add(
+    tables: dict[str, list[dict[str, Any]]],
+    scan: str,
+    result: LevelResult,
+    multiplicity: int,
+    thresholds: Thresholds,
+    bond: Bond,
+) -> None:
+    tables["points"] += rows.point_rows(result)
+    tables["diagnostics"] += rows.diagnostic_rows(result, multiplicity, thresholds)
+    tables["onsets"] += rows.onset_rows(result, scan, multiplicity, thresholds)
+    tables["fits"] += rows.fit_rows(result, scan)
+    tables["models"] += rows.model_rows(result, scan, bond.reduced_mass)
+    tables["residuals"] += rows.residual_rows(result)
+    tables["notes"] += rows.note_rows(result)
+    tables["states"] += rows.state_rows(result)

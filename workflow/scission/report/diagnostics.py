@@ -1,0 +1,71 @@
+"""The lower panels: each diagnostic against its threshold, with the side that is over shaded."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from textwrap import fill
+
+import numpy as np
+import pandas as pd
+from matplotlib.axes import Axes
+from matplotlib.ticker import MaxNLocator
+from matplotlib.transforms import ScaledTranslation
+
+from scission.report.style import INK, OVER_SHADE, THRESHOLD_DASHES, Look
+
+MIRRORED = {"hono": "luno", "uhf_hono": "uhf_luno"}
+"""Occupations that add up to two with another one's for a broken pair: drawn only without the other."""
+
+_SPAN = 12.0
+_NAME_AT_INCHES = -0.5
+
+
+def shown(diagnostics: pd.DataFrame) -> list[str]:
+    """Diagnostics to draw: with a threshold and at least one value, in the order of the table."""
+    usable = diagnostics.dropna(subset=["value", "threshold"])
+    names = list(dict.fromkeys(usable.diagnostic))
+    return [name for name in names if MIRRORED.get(name) not in names]
+
+
+def draw_diagnostic(axes: Axes, rows: pd.DataFrame, looks: Mapping[str, Look]) -> None:
+    """Draw one diagnostic of all levels that have it."""
+    rows = rows.dropna(subset=["value"])
+    bound, above = float(rows.threshold.iloc[0]), rows.direction.iloc[0] == "above"
+    low, high = _limits(rows.value.to_numpy(), bound, above)
+    for name, look in looks.items():
+        level = rows[rows.level == name].sort_values("coordinate_angstrom")
+        axes.plot(
+            level.coordinate_angstrom,
+            np.clip(level.value, low, high),
+            linestyle=look.line,
+            color=look.colour,
+            linewidth=1.1,
+            marker=look.marker,
+            markersize=2.6,
+        )
+    axes.set_ylim(low, high)
+    axes.axhspan(bound, high if above else low, facecolor=OVER_SHADE, zorder=0)
+    axes.axhline(bound, color=INK, linewidth=0.9, linestyle=THRESHOLD_DASHES, zorder=1)
+    axes.yaxis.set_major_locator(MaxNLocator(3))
+    axes.tick_params(axis="y", labelsize=7.5)
+    sign = ">" if above else "<"
+    axes.text(
+        1.012, bound, f"{sign} {bound:g}", transform=axes.get_yaxis_transform(), va="center", fontsize=8
+    )
+    _name(axes, rows)
+
+
+def _name(axes: Axes, rows: pd.DataFrame) -> None:
+    symbol, unit = rows.symbol.iloc[0], rows.unit.iloc[0]
+    text = symbol if unit in ("", "1") else f"{symbol} / {unit}"
+    place = axes.transAxes + ScaledTranslation(_NAME_AT_INCHES, 0, axes.figure.dpi_scale_trans)
+    axes.text(0, 0.5, fill(text, 13), transform=place, ha="right", va="center", fontsize=8.5, linespacing=1.0)
+
+
+def _limits(values: np.ndarray, bound: float, above: bool) -> tuple[float, float]:
+    """Range of the panel: all values, but not farther beyond the threshold than tells something."""
+    low, high = min(values.min(), bound), max(values.max(), bound)
+    if bound > 0 and above:
+        high = min(high, _SPAN * bound)
+    margin = 0.1 * (high - low) or 0.1
+    return float(low - margin), float(high + margin)
