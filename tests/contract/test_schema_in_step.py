@@ -8,7 +8,6 @@ import pytest
 import yaml
 from campaigns import GOOD, changed
 from jsonschema import Draft202012Validator
-
 from scission.campaign.schema import schema_text
 
 CONFIG = Path(__file__).parents[2] / "config"

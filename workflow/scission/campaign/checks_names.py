@@ -3,7 +3,7 @@
 import re
 from collections.abc import Collection
 
-from scission.campaign.model import LONGEST_NAME, NAME_PATTERN
+from scission.campaign.fields import LONGEST_NAME, NAME_PATTERN
 from scission.campaign.parts import Parts
 from scission.campaign.problems import Problem, one_of
 

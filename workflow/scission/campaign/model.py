@@ -1,17 +1,27 @@
 """What a campaign file may say: one type per block, with a description of every key.
 
-The JSON schema in ``config/`` is made from these types.  They check each value by itself; what only shows
-when several parts are seen together (a bond to an atom that is not there, a basis without
-an element) is in the ``checks_`` modules.
+The JSON schema in ``config/`` is made from these types.  They check each value by itself; what only
+shows when parts are seen together (a bond to an atom that is not there) is in ``checks_*``.
 """
 
 from pathlib import Path
-from typing import Annotated, Any, Literal
+from typing import Annotated, Literal
 
 import numpy as np
 from numpy.typing import NDArray
 from pydantic import BaseModel, BeforeValidator, ConfigDict, Discriminator, Field, PrivateAttr, Tag
 
+from scission.campaign.fields import (
+    NAME,
+    NAMES,
+    as_tuple,
+    kind_of,
+    map_or_null,
+    null_is_empty,
+    null_is_none,
+    or_null,
+    ref_or_null,
+)
 from scission.campaign.problems import CampaignError
 from scission.campaign.xyz import parse_atoms
 
@@ -19,52 +29,12 @@ Reference = Literal["RHF", "UHF", "ROHF", "RKS", "UKS", "CASSCF"]
 Correlation = Literal["none", "MP2", "CCSD", "CCSD(T)", "FCI", "NEVPT2"]
 Model = Literal["morse", "extended-rydberg"]
 
-NAME_PATTERN = r"^[A-Za-z0-9_][A-Za-z0-9._-]*$"
-LONGEST_NAME = 64
-# Checked in checks_names, which words it better; here only for editors that read the schema.
-_NAME: dict[str, Any] = {"pattern": NAME_PATTERN, "maxLength": LONGEST_NAME}
-_NAMES: dict[str, Any] = {"propertyNames": _NAME}
-
-
-def _or_null(schema: dict[str, Any]) -> None:
-    """Null stands for none in the file, so editors must not mark it."""
-    schema["enum"] = [*schema["enum"], None]
-    schema.pop("type", None)
-
-
-def _ref_or_null(schema: dict[str, Any]) -> None:
-    schema["anyOf"] = [{"$ref": schema.pop("$ref")}, {"type": "null"}]
-    schema["default"] = {}
-
-
-def _map_or_null(schema: dict[str, Any]) -> None:
-    schema["type"] = [schema["type"], "null"]
-    schema["default"] = {}
-
-
-def _null_is_empty(value: Any) -> Any:
-    return {} if value is None else value
-
-
-def _as_tuple(value: Any) -> Any:
-    return tuple(value) if isinstance(value, list) else value
-
 
 def _all_models() -> list[Model]:
     return ["morse", "extended-rydberg"]
 
 
-def _null_is_none(value: Any) -> Any:
-    return "none" if value is None else value
-
-
-def _kind(value: Any) -> str:
-    """Tag of a value that may be a mapping, a list or a text; tags are dropped from error paths."""
-    kinds = {dict: "<map>", list: "<list>", tuple: "<list>", str: "<text>", type(None): "<null>"}
-    return kinds.get(type(value), "<map>" if isinstance(value, BaseModel) else "<other>")
-
-
-AtomPair = Annotated[tuple[str, str], BeforeValidator(_as_tuple)]
+AtomPair = Annotated[tuple[str, str], BeforeValidator(as_tuple)]
 
 
 class Strict(BaseModel):
@@ -146,15 +116,15 @@ class Level(Strict):
     functional: str | None = Field(
         None, description="Density functional, for RKS and UKS only.", examples=["B3LYP", "PBE0", "PBE,PBE"]
     )
-    correlation: Annotated[Correlation, BeforeValidator(_null_is_none)] = Field(
+    correlation: Annotated[Correlation, BeforeValidator(null_is_none)] = Field(
         "none",
         description="Correlation method on top of the reference; NEVPT2 on CASSCF only. Null means none.",
-        json_schema_extra=_or_null,
+        json_schema_extra=or_null,
     )
     basis: Annotated[
         Annotated[str, Tag("<text>")] | Annotated[dict[str, str], Field(min_length=1), Tag("<map>")],
         Discriminator(
-            _kind,
+            kind_of,
             custom_error_type="basis",
             custom_error_message="must be the name of a basis, or a mapping element: basis",
         ),
@@ -168,7 +138,7 @@ class Level(Strict):
         | Annotated[ActiveSpace, Tag("<map>")]
         | Annotated[None, Tag("<null>")],
         Discriminator(
-            _kind,
+            kind_of,
             custom_error_type="active_space",
             custom_error_message="must be auto or {electrons: ..., orbitals: ...}",
         ),
@@ -222,7 +192,7 @@ class Stretch(Strict):
     lengths: Annotated[
         Annotated[Grid, Tag("<map>")] | Annotated[list[float], Field(min_length=1), Tag("<list>")],
         Discriminator(
-            _kind,
+            kind_of,
             custom_error_type="lengths",
             custom_error_message="must be a list of lengths or {from: ..., to: ..., points: ...}",
         ),
@@ -262,10 +232,10 @@ class Threshold(Strict):
 class Diagnostics(Strict):
     """Overrides of thresholds, and diagnostics beyond the standard ones."""
 
-    thresholds: Annotated[dict[str, Threshold], BeforeValidator(_null_is_empty)] = Field(
+    thresholds: Annotated[dict[str, Threshold], BeforeValidator(null_is_empty)] = Field(
         default_factory=dict,
         description="Diagnostic name: {value, source}; the source is required.",
-        json_schema_extra=_map_or_null,
+        json_schema_extra=map_or_null,
     )
     include: list[str] = Field(
         default_factory=list,
@@ -292,22 +262,22 @@ class Campaign(Strict):
         alias="campaign",
         description="Name of the campaign and of its folder under results/.",
         examples=["water-bond"],
-        json_schema_extra=_NAME,
+        json_schema_extra=NAME,
     )
     molecules: dict[str, Molecule] = Field(
-        min_length=1, description="Molecules by name.", json_schema_extra=_NAMES
+        min_length=1, description="Molecules by name.", json_schema_extra=NAMES
     )
     levels: dict[str, Level] = Field(
-        min_length=1, description="Levels of theory by name.", json_schema_extra=_NAMES
+        min_length=1, description="Levels of theory by name.", json_schema_extra=NAMES
     )
-    scans: dict[str, Scan] = Field(min_length=1, description="Scans by name.", json_schema_extra=_NAMES)
-    diagnostics: Annotated[Diagnostics, BeforeValidator(_null_is_empty)] = Field(
+    scans: dict[str, Scan] = Field(min_length=1, description="Scans by name.", json_schema_extra=NAMES)
+    diagnostics: Annotated[Diagnostics, BeforeValidator(null_is_empty)] = Field(
         default_factory=Diagnostics,
         description="Overrides of thresholds, each with a source.",
-        json_schema_extra=_ref_or_null,
+        json_schema_extra=ref_or_null,
     )
-    fit: Annotated[Fit, BeforeValidator(_null_is_empty)] = Field(
-        default_factory=Fit, description="How curves are fitted.", json_schema_extra=_ref_or_null
+    fit: Annotated[Fit, BeforeValidator(null_is_empty)] = Field(
+        default_factory=Fit, description="How curves are fitted.", json_schema_extra=ref_or_null
     )
     reference_level: str | None = Field(
         None, description="The level the others are compared with.", examples=["fci"]
@@ -326,5 +296,5 @@ class Campaign(Strict):
         return self._directory
 
     def keep_source(self, text: str, directory: Path) -> None:
-        """Remember the file as given and where it lies."""
+        """Remember the file and its folder."""
         self._source_text, self._directory = text, directory

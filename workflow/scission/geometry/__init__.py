@@ -26,7 +26,15 @@ if TYPE_CHECKING:
 
 COORDINATES: dict[str, Callable[..., ScanPath]] = {"stretch": stretch}
 
-__all__ = ["COORDINATES", "Fault", "GeometryError", "ScanPath", "build_path", "equilibrium_guess_angstrom", "path_at"]
+__all__ = [
+    "COORDINATES",
+    "Fault",
+    "GeometryError",
+    "ScanPath",
+    "build_path",
+    "equilibrium_guess_angstrom",
+    "path_at",
+]
 
 
 def build_path(molecule: "Molecule", scan: "Scan") -> ScanPath:
