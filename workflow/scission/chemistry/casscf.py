@@ -25,6 +25,8 @@ GRADIENT_TOLERANCE = 3e-6
 CI_TOLERANCE = 1e-11
 MAX_MACRO_CYCLES = 80
 _SPIN_SHIFT = 0.5
+_MODEL_SPACE = 100
+"""Determinants of the preconditioner; the default of 400 spends most of a small CASSCF diagonalising it."""
 _UNBROKEN = 0.05
 """<S^2> below which an unrestricted singlet shows no broken bond."""
 
@@ -60,6 +62,7 @@ def casci_object(mole: gto.Mole, spec: dict[str, Any], sizes: Array, orbital_ste
     mc = make(field, n_orbitals, (n_electrons - n_beta, n_beta))
     mc.fcisolver = fci.direct_spin1.FCI(mole)
     mc.fcisolver.conv_tol, mc.fcisolver.max_cycle = CI_TOLERANCE, 200
+    mc.fcisolver.pspace_size = _MODEL_SPACE
     s = mole.spin / 2.0
     mc.fix_spin_(shift=_SPIN_SHIFT, ss=s * (s + 1.0))
     states = spec.get("states", 1)

@@ -17,6 +17,9 @@ ENERGY_TOLERANCE = 1e-9
 AMPLITUDE_TOLERANCE = 1e-7
 MAX_CYCLES = 100
 
+_DIVERGED = 10.0
+"""Correlation energies beyond this many hartree belong to amplitudes that diverge (light molecules)."""
+
 LADDER: tuple[dict[str, float | int], ...] = (
     {},
     {"iterative_damping": 0.5, "diis_space": 10, "max_cycle": 150},
@@ -42,8 +45,8 @@ def coupled_cluster(task: dict[str, Any], field: Any, _: Record, frozen: int) ->
         field = semicanonical(field)
     solver = cc.CCSD(field, frozen=frozen or None)
     _iterate(solver, task.get("remedy", ""))
-    triples = float(solver.ccsd_t()) if task["correlation"] == "CCSD(T)" else None
-    _complete(solution, solver, triples)
+    wanted = task["correlation"] == "CCSD(T)" and solver.converged
+    _complete(solution, solver, float(solver.ccsd_t()) if wanted else None)
     solution.n_correlated = sum(solution.n_electrons) - 2 * frozen
     return solution
 
@@ -64,25 +67,36 @@ def semicanonical(field: Any) -> Any:
 
 
 def _iterate(solver: Any, remedy: str) -> None:
+    """Iterate the amplitudes, each try from the best ones of the try before."""
     solver.conv_tol, solver.conv_tol_normt, solver.max_cycle = ENERGY_TOLERANCE, AMPLITUDE_TOLERANCE, MAX_CYCLES
-    t1, t2 = None, None
+    amplitudes: tuple[Any, Any] = (None, None)
     for changes in (REMEDIES[remedy],) if remedy in REMEDIES else LADDER:
         for name, value in changes.items():
             setattr(solver, name, value)
-        solver.kernel(t1, t2)
+        try:
+            solver.kernel(*amplitudes)
+        except (AttributeError, np.linalg.LinAlgError):
+            # the extrapolation meets linearly dependent vectors when amplitudes diverge; go on without it
+            solver.converged, solver.diis = False, False
         if solver.converged:
             return
-        finite = np.isfinite(solver.e_corr) and abs(solver.e_corr) < abs(solver._scf.e_tot)
-        t1, t2 = (solver.t1, solver.t2) if finite else (None, None)
+        amplitudes = (solver.t1, solver.t2) if _sound(solver) else (None, None)
+
+
+def _sound(solver: Any) -> bool:
+    """Whether amplitudes that did not converge are worth going on from."""
+    return solver.t1 is not None and np.isfinite(solver.e_corr) and abs(solver.e_corr) < _DIVERGED
 
 
 def _complete(solution: Solution, solver: Any, triples: float | None) -> None:
-    doubles = float(solver.e_corr)
+    doubles = float(solver.e_corr) if solver.e_corr is not None else float("nan")
     total = doubles + (triples or 0.0)
     solution.energy += total
     solution.energies["correlation"] = total
     if triples is not None:
         solution.energies["triples"] = triples
     solution.converged = bool(solver.converged)
+    if not solution.converged:
+        return
     solution.t1 = tuple(np.asarray(t) for t in solver.t1) if isinstance(solver.t1, tuple) else (np.asarray(solver.t1),)
     solution.t2 = tuple(np.asarray(t) for t in solver.t2) if isinstance(solver.t2, tuple) else (np.asarray(solver.t2),)

@@ -84,6 +84,8 @@ def record_of(
 def unconverged_message(solution: Solution) -> str:
     """Return one line that says what did not converge, and the energy it ended at."""
     what = solution.reference if solution.correlation == "none" else solution.correlation
+    if not np.isfinite(solution.energy):
+        return f"{what} did not converge: the iterations diverge"
     return f"{what} did not converge; last energy {solution.energy:.8f} hartree"
 
 
