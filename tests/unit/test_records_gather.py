@@ -57,7 +57,12 @@ def gathered(tmp_path):
     for point in points[:-2]:
         store.write(computed(point))
     failed = Record(
-        points[-2].key, "point", "failed", reason="raised", message="no", scalars={"n_basis": float("nan"), "energy": -99.0}
+        points[-2].key,
+        "point",
+        "failed",
+        reason="raised",
+        message="no",
+        scalars={"n_basis": float("nan"), "energy": -99.0},
     )
     store.write(failed)
     out = tmp_path / "campaign.h5"

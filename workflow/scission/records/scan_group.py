@@ -106,7 +106,7 @@ class ScanGroup:
         dataset = self._group.create_dataset(item.name, data=values, dtype=dtype)
         describe(dataset, item, [self._group["level"], self._group["point"]])
         dataset.attrs["coordinates"] = "coordinate_angstrom"
-        if item.dtype == "i8":
+        if item.dtype == "i8" and item is not ATTEMPTS:  # attempts are known of every point
             dataset.attrs["_FillValue"] = np.int64(MISSING_INTEGER)
         return dataset
 

@@ -11,29 +11,33 @@ from matplotlib.axes import Axes
 from matplotlib.ticker import MaxNLocator
 from matplotlib.transforms import ScaledTranslation
 
+from scission.diagnostics import DIAGNOSTICS
 from scission.report.style import INK, OVER_SHADE, THRESHOLD_DASHES, Look
 
 MIRRORED = {"hono": "luno", "uhf_hono": "uhf_luno"}
 """Occupations that add up to two with another one's for a broken pair: drawn only without the other."""
 
-_SPAN = 12.0
+_SPAN = 40.0
+_TRIVIAL = 1e-8
 _NAME_AT_INCHES = -0.5
 
 
 def shown(diagnostics: pd.DataFrame) -> list[str]:
-    """Diagnostics to draw: with a threshold and at least one value, in the order of the table."""
-    usable = diagnostics.dropna(subset=["value", "threshold"])
-    names = list(dict.fromkeys(usable.diagnostic))
+    """Diagnostics to draw: with a threshold and at least one value, in the order of the registry."""
+    usable = set(diagnostics.dropna(subset=["value", "threshold"]).diagnostic)
+    names = [name for name in DIAGNOSTICS if name in usable] + sorted(usable - DIAGNOSTICS.keys())
     return [name for name in names if MIRRORED.get(name) not in names]
 
 
 def draw_diagnostic(axes: Axes, rows: pd.DataFrame, looks: Mapping[str, Look]) -> None:
-    """Draw one diagnostic of all levels that have it."""
+    """Draw one diagnostic of all levels that have it; one that is zero by its form says nothing."""
     rows = rows.dropna(subset=["value"])
     bound, above = float(rows.threshold.iloc[0]), rows.direction.iloc[0] == "above"
     low, high = _limits(rows.value.to_numpy(), bound, above)
     for name, look in looks.items():
         level = rows[rows.level == name].sort_values("coordinate_angstrom")
+        if (level.value.abs() < _TRIVIAL).all():
+            continue
         axes.plot(
             level.coordinate_angstrom,
             np.clip(level.value, low, high),

@@ -18,7 +18,7 @@ from scission.report.style import looks
 # Inches.  Fixed margins, so that the axes of all figures of a campaign line up under each other.
 WIDTH, _LEFT, _RIGHT, _BOTTOM = 8.0, 1.5, 0.9, 0.55
 _TITLE, _LEGEND_ROW, _ENERGIES, _PANEL, _GAP = 0.42, 0.175, 3.7, 0.56, 0.07
-_LEGEND_COLUMNS = 4
+_LEGEND_COLUMNS = 6
 
 
 def draw_scan(scan: str, frames: Mapping[str, pd.DataFrame], coordinate: str = "bond length") -> Figure:

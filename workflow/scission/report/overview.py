@@ -47,7 +47,13 @@ def best_constants(frames: Mapping[str, pd.DataFrame]) -> pd.DataFrame:
         fits = fits[(fits.scan == scan) & (fits.level == level)]
         rows.append({"scan": scan, "level": level} | _constants(part, fits))
     table = pd.DataFrame(rows).fillna("")
-    return table[sorted(table, key=lambda name: name == "remark")]  # the longest words come last
+    return table[sorted(table, key=_place)]
+
+
+def _place(column: object) -> int:
+    """Words before and behind the constants, which come in the order of ``QUANTITIES``."""
+    order = ("scan", "level", *QUANTITIES, "models", "remark")
+    return order.index(str(column).split(" / ")[0])
 
 
 def _constants(models: pd.DataFrame, fits: pd.DataFrame) -> dict[str, str]:

@@ -48,7 +48,9 @@ COLUMNS: dict[str, tuple[Column, ...]] = {
         _STAGE,
         Column("remedy", "str", "1", "what was done differently in the last attempt; empty for nothing"),
         _KEY,
-        Column("relative_energy_ev", "float", "eV", "energy above the level's own minimum, else lowest point"),
+        Column(
+            "relative_energy_ev", "float", "eV", "energy above the level's own minimum, else lowest point"
+        ),
         Column("energy_reference_hartree", "float", "hartree", "total energy of the reference wavefunction"),
         Column("energy_correlation_hartree", "float", "hartree", "correlation energy on top of it"),
         Column("cpu_s", "float", "s", "processor time of the calculation"),
