@@ -12,6 +12,7 @@ import json
 import math
 import zipfile
 from collections.abc import Mapping
+from functools import lru_cache
 from typing import IO, Any
 
 import numpy as np
@@ -94,12 +95,16 @@ def _array(archive: zipfile.ZipFile, name: str) -> np.ndarray:
     if np.lib.format.read_magic(head) != (1, 0):
         raise DamagedRecordError(f"{name}.npy has an unknown format version")
     length = int.from_bytes(head.read(2), "little")
-    # Read by hand, because numpy would allocate whatever size the header claims.
-    claim = ast.literal_eval(head.read(length).decode("latin1"))
-    dtype = np.dtype(claim["descr"])
-    shape = tuple(int(size) for size in claim["shape"])
+    dtype, shape, fortran_order = _claim(head.read(length).decode("latin1"))
     body = data[head.tell() :]
     if dtype.hasobject or math.prod(shape) * dtype.itemsize != len(body):
         raise DamagedRecordError(f"{name}.npy claims {shape} of {dtype} but holds {len(body)} bytes")
     flat = np.frombuffer(body, dtype=dtype)
-    return np.array(flat.reshape(shape[::-1]).T if claim["fortran_order"] else flat.reshape(shape), order="C")
+    return np.array(flat.reshape(shape[::-1]).T if fortran_order else flat.reshape(shape), order="C")
+
+
+@lru_cache(maxsize=512)  # most arrays of a campaign share a few headers
+def _claim(header: str) -> tuple[np.dtype, tuple[int, ...], bool]:
+    """What an npy header says; by hand, because numpy would allocate whatever size it claims."""
+    claim = ast.literal_eval(header)
+    return np.dtype(claim["descr"]), tuple(int(size) for size in claim["shape"]), bool(claim["fortran_order"])

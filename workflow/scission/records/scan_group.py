@@ -71,7 +71,9 @@ class ScanGroup:
             if math.isfinite(value):  # an integer array has no place for NaN
                 self._numbers[name][place] = value
         for name, value in record.diagnostics.items():
-            self._diagnostics.setdefault(name, self._blank("f8"))[place] = value
+            if name not in self._diagnostics:
+                self._diagnostics[name] = self._blank("f8")
+            self._diagnostics[name][place] = value
         words = {"flag": flag[0], "reasons": flag[1]}
         for name, column_of in self._texts.items():
             column_of[place] = words[name] if name in words else getattr(record, name)
