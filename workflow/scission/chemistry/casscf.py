@@ -25,6 +25,9 @@ GRADIENT_TOLERANCE = 3e-6
 CI_TOLERANCE = 1e-11
 MAX_MACRO_CYCLES = 80
 _SPIN_SHIFT = 0.5
+_STEP = 0.1
+"""Largest orbital rotation of a step: the default of 0.02 takes twice the cycles from carried orbitals."""
+
 _MODEL_SPACE = 100
 """Determinants of the preconditioner; the default of 400 spends most of a small CASSCF diagonalising it."""
 _UNBROKEN = 0.05
@@ -73,6 +76,7 @@ def casci_object(mole: gto.Mole, spec: dict[str, Any], sizes: Array, orbital_ste
     if orbital_step:
         mc.conv_tol, mc.conv_tol_grad = ENERGY_TOLERANCE, GRADIENT_TOLERANCE
         mc.max_cycle_macro, mc.chkfile = MAX_MACRO_CYCLES, None
+        mc.max_stepsize = _STEP
         mc.canonicalization = False
     mc.verbose = 0
     return mc

@@ -11,6 +11,7 @@ from scission.solution import Solution
 
 from . import scf
 from .casscf import finish_casscf, solve_casscf
+from .compare import likeness
 from .molecule import build_mole, root_overlap
 from .orbitals import Orbitals, not_orthonormal
 from .recording import Stopwatch, record_of
@@ -25,8 +26,9 @@ def establish_reference(task: dict[str, Any], store: Store, watch: Stopwatch) ->
     """Compute a reference from the task's starts; return the record that should now stand.
 
     ``task["replace"]`` says when the new result takes the place of a record that is already there:
-    ``always``, ``lower`` (lower by more than 1e-6 hartree, or converged where the old one was not) or
-    ``closer`` (same energy, more like the record ``task["closer_to"]``).
+    ``always``, ``lower`` (lower by more than 1e-6 hartree, or converged where the old one was not),
+    ``closer`` (same energy, more like the record ``task["closer_to"]``) or ``closer_state`` (more like it,
+    at whatever energy).
     """
     new = _solve(task, store, watch)
     old = store.read("reference", task["key"])
@@ -96,10 +98,9 @@ def _takes_place(task: dict[str, Any], store: Store, new: Record, old: Record) -
     step = new.scalars["energy"] - old.scalars["energy"]
     if task["replace"] == "lower":
         return bool(step < -LOWER)
-    from .compare import likeness  # comparing needs no molecule
-
     neighbour = _required(store, task["closer_to"])
-    return bool(step < LOWER and likeness(neighbour, new) > likeness(neighbour, old) + 1e-3)
+    alike = likeness(neighbour, new) > likeness(neighbour, old) + 1e-3
+    return bool(alike and (task["replace"] == "closer_state" or step < LOWER))
 
 
 def _required(store: Store, key: str) -> Record:

@@ -22,6 +22,25 @@ def follow_from_anchor(state: ChainState) -> None:
             _carry(state, node, anchor)
 
 
+    if state.active:
+        _pursue(state)
+
+
+def _pursue(state: ChainState) -> None:
+    """Follow the state of the equilibrium where it differs from the one the active space was chosen on.
+
+    The space is chosen at the stretched bond, but the curve belongs to the state at the equilibrium; where
+    the walk from the one to the other has changed its state, the rest is computed again from this side.
+    """
+    for node, _ in list(state.outward(state.start)):
+        parent = state.good_towards(node, state.start)
+        if parent is not None and state.good(node) and state.overlap(parent, node) < SMOOTH:
+            before = state.overlap(parent, node)
+            state.solve(node, [{"carry": parent.key}], choose="first", replace="closer_state", closer_to=parent.key)
+            if state.good(node) and before < state.overlap(parent, node) < SMOOTH:
+                _approach(state, parent, node, DEEPEST)
+
+
 def _establish(state: ChainState, anchor: Node) -> None:
     if state.active:
         starts: list[dict[str, Any]] = [{"select": True}]
