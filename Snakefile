@@ -24,6 +24,7 @@ include: "workflow/rules/report.smk"
 rule all:
     default_target: True
     input:
+        summaries,  # here too: a retry removes some, and the engine makes no lost intermediate file by itself
         "campaign.h5",
         "tables/points.csv",
         "failures.csv",

@@ -1,5 +1,6 @@
 # Sourced by scripts/run and scripts/test: gives the project its own environment in .venv.
 # Sets `project` and keeps every cache inside the project folder.
+set -o pipefail  # a failed download must not pass for a good one
 
 project="$(cd -- "$(dirname -- "${BASH_SOURCE[0]}")/.." && pwd -P)"
 venv="$project/.venv"
@@ -21,14 +22,18 @@ MESSAGE
     return 1
 }
 
-# Everything that decides what is installed: the folder too, since an environment cannot be moved.
-wanted_environment() {
+# What decides which packages are there; the folder too, since an environment cannot be moved.
+wanted_packages() {
     printf '%s\n' "$project"
-    cat -- "$project/requirements.lock" "$project/pyproject.toml"
+    cat -- "$project/requirements.lock"
+}
+
+packages_are_ready() {
+    [ -f "$venv/complete" ] && wanted_packages | cmp -s - "$venv/complete" && "$venv/bin/python" -c '' 2>/dev/null
 }
 
 environment_is_ready() {
-    [ -f "$venv/complete" ] && wanted_environment | cmp -s - "$venv/complete" && "$venv/bin/python" -c '' 2>/dev/null
+    packages_are_ready && cmp -s -- "$project/pyproject.toml" "$venv/installed"
 }
 
 # Shows how far pip is: one line a tenth of the packages, and what went wrong if it did.
@@ -44,6 +49,10 @@ install_packages() {
         printf 'set-up failed: the packages could not be installed (whole log: %s)\n' "$log" >&2
         return 1
     fi
+}
+
+install_scission() {
+    local log="$project/.cache/set-up.log"
     if ! "$venv/bin/python" -m pip install --quiet --no-cache-dir --no-deps --no-build-isolation \
         --disable-pip-version-check -e "$project" >>"$log" 2>&1; then
         tail -n 20 -- "$log" >&2
@@ -52,16 +61,21 @@ install_packages() {
     fi
 }
 
+# The marks are written last and renamed into place: an interrupted set-up is never taken for a finished one.
 make_environment() {
-    local python
-    python="$(find_python)" || return 1
-    printf 'setting up scission in %s (once, a few minutes) with %s\n' "$venv" "$("$python" --version)" >&2
-    rm -rf -- "$venv"
-    "$python" -m venv "$venv" || return 1
-    # RUSTUP_HOME: pip asks any rustc it finds for its version, and a rustup proxy then writes its settings.
-    TMPDIR="$project/.cache/tmp" RUSTUP_HOME="$project/.cache/rustup" install_packages >&2 || return 1
-    # Written last and renamed into place: an interrupted set-up is never taken for a finished one.
-    wanted_environment >"$venv/complete.part" && mv -- "$venv/complete.part" "$venv/complete"
+    # pip keeps its hands off the rest of the machine; it asks any rustc for its version, whose proxy writes settings
+    export TMPDIR="$project/.cache/tmp" RUSTUP_HOME="$project/.cache/rustup"
+    if ! packages_are_ready; then
+        local python
+        python="$(find_python)" || return 1
+        printf 'setting up scission in %s (once, a few minutes) with %s\n' "$venv" "$("$python" --version)" >&2
+        rm -rf -- "$venv"
+        "$python" -m venv "$venv" || return 1
+        install_packages >&2 || return 1
+        wanted_packages >"$venv/complete.part" && mv -- "$venv/complete.part" "$venv/complete"
+    fi
+    install_scission || return 1
+    cp -- "$project/pyproject.toml" "$venv/installed.part" && mv -- "$venv/installed.part" "$venv/installed"
     printf 'set-up done\n' >&2
 }
 
@@ -80,6 +94,6 @@ except BlockingIOError:
     print("another set-up of this project is at work, waiting for it", file=sys.stderr, flush=True)
     fcntl.flock(9, fcntl.LOCK_EX)
 LOCK
-    environment_is_ready || make_environment || exit 1
+    environment_is_ready || (make_environment) || exit 1  # in a subshell: its TMPDIR is for pip only
     exec 9>&-
 }

@@ -110,7 +110,7 @@ def test_the_child_dies_with_a_guard_that_is_killed(tmp_path):
     child = psutil.Process(int(process.stdout.readline()))
     process.kill()
     process.wait()
-    gone, alive = psutil.wait_procs([child], timeout=5.0)
+    _, alive = psutil.wait_procs([child], timeout=5.0)
 
     assert not alive
 

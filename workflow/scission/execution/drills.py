@@ -1,8 +1,8 @@
 """FAULT DRILLS: tasks that misbehave on purpose, for tests of the guard and of whole runs.
 
 None of this is reached in normal work.  ``RUNNERS`` holds task runners that take no chemistry; the
-variable SCISSION_DRILL, ``{"<key>": "raise" | "kill" | "hang" | "allocate"}`` as JSON, makes the listed
-calculations misbehave in an otherwise normal run.
+variable SCISSION_DRILL, ``{"<key>": "raise" | "kill" | "hang" | "allocate" | "pause"}`` as JSON, makes the
+listed calculations misbehave in an otherwise normal run.
 """
 
 from __future__ import annotations
@@ -20,6 +20,7 @@ from scission.records.store import Record, Store
 Runner = Callable[[dict[str, Any], Store], dict[str, Any]]
 
 VARIABLE = "SCISSION_DRILL"
+PAUSE_S = 4.0
 
 
 class DrillError(Exception):
@@ -27,11 +28,13 @@ class DrillError(Exception):
 
 
 def misbehave(how: str) -> None:
-    """Raise, kill the own process, hang or take memory without end."""
+    """Raise, kill the own process, hang, take memory without end, or only pause (to be caught at work)."""
     if how == "raise":
         raise DrillError("a drill\nraised this")
     if how == "kill":
         os.kill(os.getpid(), signal.SIGKILL)
+    if how == "pause":
+        time.sleep(PAUSE_S)
     if how == "hang":
         time.sleep(3600.0)
     if how == "allocate":
