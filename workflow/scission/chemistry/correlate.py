@@ -20,16 +20,15 @@ from .nevpt2 import nevpt2
 from .perturbation import second_order_energy
 from .recording import Stopwatch, record_of
 from .reference import carried
-from .solutions import solution_of_field
 
-METHODS: dict[str, Callable[[dict[str, Any], Any, Record, int], Solution]] = {
+METHODS: dict[str, Callable[[dict[str, Any], Any, Record, int, Store], Solution]] = {
     "MP2": second_order_energy,
     "CCSD": coupled_cluster,
     "CCSD(T)": coupled_cluster,
     "FCI": full_ci,
     "NEVPT2": nevpt2,
 }
-"""Correlation -> function (task, mean field, reference record, frozen orbitals) -> Solution."""
+"""Correlation -> function (task, mean field, reference record, frozen orbitals, store) -> Solution."""
 
 _FROM_REFERENCE = ("s2", "s2_excess", "uhf_hono", "uhf_luno", "triplet_stability", "hono", "luno", "c0_squared", "homo_lumo_gap")
 
@@ -46,7 +45,7 @@ def correlate_point(task: dict[str, Any], store: Store, watch: Stopwatch) -> Rec
     mole = build_mole(task["molecule"], task["spec"]["basis"], np.array(task["positions"]))
     field = prepared_field(task, mole, reference)
     frozen = chemcore(mole) if task["frozen_core"] else 0
-    solution = METHODS[task["correlation"]](task, field, reference, frozen)
+    solution = METHODS[task["correlation"]](task, field, reference, frozen, store)
     solution.correlation = task["correlation"]
     record = record_of(solution, "point", task, watch)
     record.reference_stamp = reference.stamp
@@ -60,11 +59,6 @@ def prepared_field(task: dict[str, Any], mole: gto.Mole, reference: Record) -> A
     if task["spec"]["reference"] == "CASSCF":
         return field
     return scf.put_orbitals(field, carried(reference, mole), float(reference.scalars["energy"]))
-
-
-def solution_on(field: Any, task: dict[str, Any]) -> Solution:
-    """Return the Solution of a mean field, to be completed by a correlation method."""
-    return solution_of_field(field, task["spec"], diagnose=False)
 
 
 def _inherit(record: Record, reference: Record) -> None:

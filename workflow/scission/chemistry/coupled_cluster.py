@@ -8,9 +8,11 @@ import numpy as np
 from pyscf import cc
 from pyscf.scf import rohf
 
-from scission.records.store import Record
+from scission.records.store import Record, Store
 from scission.solution import Solution
 
+from .amplitudes import Amplitudes, amplitudes_of, recall, remember
+from .molecule import build_mole
 from .solutions import solution_of_field
 
 ENERGY_TOLERANCE = 1e-9
@@ -20,13 +22,7 @@ MAX_CYCLES = 100
 _DIVERGED = 10.0
 """Correlation energies beyond this many hartree belong to amplitudes that diverge (light molecules)."""
 
-LADDER: tuple[dict[str, float | int], ...] = (
-    {},
-    {"iterative_damping": 0.5, "diis_space": 10, "max_cycle": 150},
-    {"iterative_damping": 0.3, "diis_start_cycle": 30, "diis_space": 12, "max_cycle": 250},
-)
-"""What is changed from one try to the next; each try starts from the amplitudes of the one before."""
-
+DAMPED: dict[str, float | int] = {"iterative_damping": 0.5, "diis_space": 10, "max_cycle": 150}
 REMEDIES: dict[str, dict[str, float | int]] = {
     "damping": {"iterative_damping": 0.3, "max_cycle": 300, "diis_space": 12},
     "level-shift": {"level_shift": 0.3, "max_cycle": 300},
@@ -34,21 +30,32 @@ REMEDIES: dict[str, dict[str, float | int]] = {
 }
 
 
-def coupled_cluster(task: dict[str, Any], field: Any, _: Record, frozen: int) -> Solution:
+def coupled_cluster(task: dict[str, Any], field: Any, reference: Record, frozen: int, store: Store) -> Solution:
     """Return the CCSD or CCSD(T) energy and amplitudes on an RHF, UHF or ROHF reference.
 
+    Where the iterations do not converge, or end on a solution above the reference, the amplitudes of
+    neighbouring points nearer to the equilibrium (``task["neighbours"]``) are carried here.
     For ROHF the orbitals are made semicanonical first, which the triples correction is defined with
     (Watts, Gauss and Bartlett, J. Chem. Phys. 98, 8718 (1993)); the CCSD energy does not depend on it.
     """
     solution = solution_of_field(field, task["spec"], diagnose=False)
+    solution.n_correlated = sum(solution.n_electrons) - 2 * frozen
+    solver = make_solver(field, frozen)
+    how = _solve(solver, task, reference, frozen, store)
+    if how:
+        solution.notes["amplitudes"] = how
+    wanted = task["correlation"] == "CCSD(T)" and solver.converged
+    _complete(solution, solver, float(solver.ccsd_t()) if wanted else None)
+    return solution
+
+
+def make_solver(field: Any, frozen: int) -> Any:
+    """Return the engine's CCSD object with our tolerances."""
     if isinstance(field, rohf.ROHF):
         field = semicanonical(field)
     solver = cc.CCSD(field, frozen=frozen or None)
-    _iterate(solver, task.get("remedy", ""))
-    wanted = task["correlation"] == "CCSD(T)" and solver.converged
-    _complete(solution, solver, float(solver.ccsd_t()) if wanted else None)
-    solution.n_correlated = sum(solution.n_electrons) - 2 * frozen
-    return solution
+    solver.conv_tol, solver.conv_tol_normt, solver.max_cycle = ENERGY_TOLERANCE, AMPLITUDE_TOLERANCE, MAX_CYCLES
+    return solver
 
 
 def semicanonical(field: Any) -> Any:
@@ -66,26 +73,80 @@ def semicanonical(field: Any) -> Any:
     return result
 
 
-def _iterate(solver: Any, remedy: str) -> None:
-    """Iterate the amplitudes, each try from the best ones of the try before."""
-    solver.conv_tol, solver.conv_tol_normt, solver.max_cycle = ENERGY_TOLERANCE, AMPLITUDE_TOLERANCE, MAX_CYCLES
-    amplitudes: tuple[Any, Any] = (None, None)
-    for changes in (REMEDIES[remedy],) if remedy in REMEDIES else LADDER:
-        for name, value in changes.items():
-            setattr(solver, name, value)
-        try:
-            solver.kernel(*amplitudes)
-        except (AttributeError, np.linalg.LinAlgError):
-            # the extrapolation meets linearly dependent vectors when amplitudes diverge; go on without it
-            solver.converged, solver.diis = False, False
-        if solver.converged:
-            return
-        amplitudes = (solver.t1, solver.t2) if _sound(solver) else (None, None)
+def _solve(solver: Any, task: dict[str, Any], reference: Record, frozen: int, store: Store) -> str:
+    """Converge the amplitudes; return in words what it took, empty for the usual way."""
+    remedy = task.get("remedy", "")
+    if remedy in REMEDIES:
+        _iterate(solver, None, REMEDIES[remedy])
+        how = remedy
+    elif remedy != "neighbour" and _iterate(solver, None, {}):
+        return ""
+    else:
+        start = _carried(task, frozen, store)
+        if start is not None and _iterate(solver, start.at(solver), DAMPED):
+            remember(reference.key, frozen, amplitudes_of(solver))
+            return "carried from the neighbour nearer to the equilibrium"
+        _iterate(solver, None, DAMPED)
+        how = "damped iterations"
+    if solver.converged and not _sound(solver):
+        solver.converged = False
+    return how
+
+
+def _carried(task: dict[str, Any], frozen: int, store: Store) -> Amplitudes | None:
+    """Return amplitudes of the nearest neighbour, continued from the nearest one that converges by itself."""
+    neighbours = task.get("neighbours", [])
+    for depth, neighbour in enumerate(neighbours):
+        start = _at_neighbour(task, neighbour, None, frozen, store)
+        if start is None:
+            continue
+        for nearer in reversed(neighbours[:depth]):
+            start = _at_neighbour(task, nearer, start, frozen, store)
+            if start is None:
+                return None
+        return start
+    return None
+
+
+def _at_neighbour(
+    task: dict[str, Any], neighbour: dict[str, Any], start: Amplitudes | None, frozen: int, store: Store
+) -> Amplitudes | None:
+    """Return converged amplitudes at a neighbour, from ``start`` or by themselves; ``None`` if they do not."""
+    from .correlate import prepared_field  # the two modules need each other
+
+    key = neighbour["reference_key"]
+    known = recall(key, frozen)
+    if known is not None:
+        return known
+    reference = store.read("reference", key)
+    if reference is None or reference.status != "converged":
+        return None
+    mole = build_mole(task["molecule"], task["spec"]["basis"], np.array(neighbour["positions"]))
+    solver = make_solver(prepared_field(task, mole, reference), frozen)
+    good = _iterate(solver, start.at(solver) if start else None, DAMPED if start else {})
+    if not good:
+        return None
+    found = amplitudes_of(solver)
+    remember(key, frozen, found)
+    return found
+
+
+def _iterate(solver: Any, start: tuple[Any, Any] | None, changes: dict[str, float | int]) -> bool:
+    """Iterate the amplitudes; return whether they converged to a solution below the reference."""
+    solver.diis = True
+    for name, value in changes.items():
+        setattr(solver, name, value)
+    try:
+        solver.kernel(*(start or (None, None)))
+    except (AttributeError, np.linalg.LinAlgError):
+        # the extrapolation meets linearly dependent vectors where amplitudes diverge
+        solver.converged = False
+    return bool(solver.converged) and _sound(solver)
 
 
 def _sound(solver: Any) -> bool:
-    """Whether amplitudes that did not converge are worth going on from."""
-    return solver.t1 is not None and np.isfinite(solver.e_corr) and abs(solver.e_corr) < _DIVERGED
+    """Whether the correlation energy is one a ground state can have: finite and not above the reference."""
+    return solver.e_corr is not None and bool(np.isfinite(solver.e_corr)) and -_DIVERGED < solver.e_corr < 1e-9
 
 
 def _complete(solution: Solution, solver: Any, triples: float | None) -> None:

@@ -7,7 +7,7 @@ from typing import Any
 import numpy as np
 from pyscf import fci, mcscf
 
-from scission.records.store import Record
+from scission.records.store import Record, Store
 from scission.solution import Solution
 
 from .solutions import solution_of_field
@@ -19,7 +19,7 @@ _SMALL_ENOUGH_TO_TURN = 12
 """Up to this many orbitals the vector is turned to natural orbitals for the leading weight."""
 
 
-def full_ci(task: dict[str, Any], field: Any, _: Record, frozen: int) -> Solution:
+def full_ci(task: dict[str, Any], field: Any, _: Record, frozen: int, __: Store) -> Solution:
     """Return the lowest full-CI state of the spin asked for; ``frozen`` orbitals stay doubly occupied."""
     mole = field.mol
     restricted = field if np.ndim(field.mo_coeff) == 2 else _shared_orbitals(field)

@@ -6,13 +6,13 @@ from typing import Any
 
 from pyscf import mp
 
-from scission.records.store import Record
+from scission.records.store import Record, Store
 from scission.solution import Solution
 
 from .solutions import solution_of_field
 
 
-def second_order_energy(task: dict[str, Any], field: Any, _: Record, frozen: int) -> Solution:
+def second_order_energy(task: dict[str, Any], field: Any, _: Record, frozen: int, __: Store) -> Solution:
     """Return the MP2 energy on an RHF or UHF reference, with ``frozen`` core orbitals left out."""
     solver = mp.MP2(field, frozen=frozen or None)
     correlation, _ = solver.kernel(with_t2=False)

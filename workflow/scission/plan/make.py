@@ -9,7 +9,7 @@ from typing import Any
 
 from scission import forecast
 from scission.campaign import Campaign, Level, Scan
-from scission.geometry import ScanPath, build_path
+from scission.geometry import ScanPath, build_path, equilibrium_guess_angstrom
 from scission.physics import PHYSICS_VERSION
 
 from .chains import build_chain, merge_chains, molecule_facts
@@ -19,6 +19,10 @@ from .write import campaign_digest
 
 BLOCK_SECONDS = 60.0
 """Work given to one job on a local machine, by the forecast; a cluster's profile asks for more."""
+
+_CARRIES_AMPLITUDES = ("CCSD", "CCSD(T)")
+_NEIGHBOURS = 8
+"""Points over which amplitudes are carried at most; beyond that they have little to do with each other."""
 
 
 def make_plan(campaign: Campaign, block_seconds: float = BLOCK_SECONDS) -> Plan:
@@ -54,7 +58,18 @@ def _expand_scan(
             coordinate = tuple(float(v) for v in value)
             points.append(Point(name, level_name, i + 1, coordinate, path.names, key, reference))
             work.append(_describe(level, facts, spec, points[-1], positions))
+        if level.correlation in _CARRIES_AMPLITUDES:
+            _add_neighbours(work[-len(path.values) :], equilibrium_guess_angstrom(molecule, scan))
     return points, work
+
+
+def _add_neighbours(items: list[dict[str, Any]], equilibrium: float) -> None:
+    """Tell each point of a level which points lead to it from the equilibrium, nearest first."""
+    middle = min(range(len(items)), key=lambda i: abs(items[i]["coordinate"][0] - equilibrium))
+    for i, item in enumerate(items):
+        inward = range(i - 1, middle - 1, -1) if i > middle else range(i + 1, middle + 1)
+        chosen = [items[j] for j in inward][:_NEIGHBOURS]
+        item["neighbours"] = [{k: n[k] for k in ("reference_key", "positions")} for n in chosen]
 
 
 def _describe(level: Level, facts: dict[str, Any], spec: dict[str, Any], point: Point, positions: Any) -> dict[str, Any]:

@@ -1,0 +1,85 @@
+"""Coupled-cluster amplitudes that can be carried from one geometry to the next."""
+
+from __future__ import annotations
+
+from collections import OrderedDict
+from dataclasses import dataclass
+from typing import Any
+
+import numpy as np
+from numpy.typing import NDArray
+
+from .molecule import root_overlap
+
+Array = NDArray[np.float64]
+
+_KEPT = 4
+"""Sets of amplitudes kept in this process: neighbours of a scan ask for the same ones one after another."""
+
+_memory: OrderedDict[tuple[str, int], Amplitudes] = OrderedDict()
+
+
+@dataclass
+class Amplitudes:
+    """Amplitudes with the orbitals they belong to.
+
+    ``occupied`` and ``virtual`` hold one array a spin (one for a closed shell), (n_ao, n) in
+    symmetrically orthogonalised basis functions; t1 and t2 are as the engine has them.
+    """
+
+    occupied: tuple[Array, ...]
+    virtual: tuple[Array, ...]
+    t1: Any
+    t2: Any
+
+    def at(self, solver: Any) -> tuple[Any, Any]:
+        """Return t1 and t2 turned to the orbitals of ``solver``, which belongs to a geometry near by."""
+        occupied, virtual = _orbitals(solver)
+        o = [a.T @ b for a, b in zip(self.occupied, occupied, strict=True)]
+        v = [a.T @ b for a, b in zip(self.virtual, virtual, strict=True)]
+        if len(o) == 1:
+            return _turn1(self.t1, o[0], v[0]), _turn2(self.t2, o[0], o[0], v[0], v[0])
+        t1 = tuple(_turn1(t, o[s], v[s]) for s, t in enumerate(self.t1))
+        pairs = ((0, 0), (0, 1), (1, 1))
+        t2 = tuple(_turn2(t, o[p], o[q], v[p], v[q]) for t, (p, q) in zip(self.t2, pairs, strict=True))
+        return t1, t2
+
+
+def amplitudes_of(solver: Any) -> Amplitudes:
+    """Return the amplitudes of a converged solver with their orbitals."""
+    return Amplitudes(*_orbitals(solver), solver.t1, solver.t2)
+
+
+def remember(reference_key: str, frozen: int, amplitudes: Amplitudes) -> None:
+    """Keep amplitudes in this process; the oldest ones go."""
+    _memory[reference_key, frozen] = amplitudes
+    while len(_memory) > _KEPT:
+        _memory.popitem(last=False)
+
+
+def recall(reference_key: str, frozen: int) -> Amplitudes | None:
+    """Return amplitudes kept in this process, or ``None``."""
+    return _memory.get((reference_key, frozen))
+
+
+def _orbitals(solver: Any) -> tuple[tuple[Array, ...], tuple[Array, ...]]:
+    """Return correlated occupied and virtual orbitals by spin, in the Loewdin basis."""
+    root, _ = root_overlap(solver.mol)
+    coeff, occ = np.asarray(solver.mo_coeff), np.asarray(solver.mo_occ)
+    masks = solver.get_frozen_mask()
+    if coeff.ndim == 2:
+        coeff, occ, masks = coeff[None], occ[None], [masks]
+    occupied, virtual = [], []
+    for c, o, mask in zip(coeff, occ, masks, strict=True):
+        x = root @ c
+        occupied.append(x[:, mask & (o > 0)])
+        virtual.append(x[:, mask & (o == 0)])
+    return tuple(occupied), tuple(virtual)
+
+
+def _turn1(t: Array, o: Array, v: Array) -> Array:
+    return o.T @ t @ v
+
+
+def _turn2(t: Array, o1: Array, o2: Array, v1: Array, v2: Array) -> Array:
+    return np.einsum("ijab,iI,jJ,aA,bB->IJAB", t, o1, o2, v1, v2, optimize=True)
