@@ -43,6 +43,7 @@ class Solution:
         n_inactive: doubly occupied orbitals outside the space of ``natural_occupations``.
         dipole: (3,) dipole moment of the reference, atomic units, origin at the nuclear charge centre.
         notes: remarks in words, by subject (how the active space was chosen, ...).
+        numbers: further scalars of a record, by the names of the schema.
         extra: further arrays that a later stage needs (CI vectors and the like), by name.
     """
 
@@ -68,6 +69,7 @@ class Solution:
     n_inactive: int = 0
     dipole: Array | None = None
     notes: dict[str, str] = field(default_factory=dict)
+    numbers: dict[str, float] = field(default_factory=dict)
     extra: dict[str, Array] = field(default_factory=dict)
 
     @property

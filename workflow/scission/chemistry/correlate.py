@@ -68,5 +68,9 @@ def _inherit(record: Record, reference: Record) -> None:
             record.diagnostics[name] = reference.diagnostics[name]
             record.absent.pop(name, None)
     record.notes = {**reference.notes, **record.notes}
+    pictures = {n: v for n, v in reference.scalars.items() if n.startswith(("bond_", "vb_"))}
+    record.scalars = {**pictures, **record.scalars}
+    if "transfer_weights" in reference.arrays:
+        record.arrays.setdefault("transfer_weights", reference.arrays["transfer_weights"])
     if "natural_occupations" in reference.arrays:
         record.arrays.setdefault("natural_occupations", reference.arrays["natural_occupations"])

@@ -10,6 +10,7 @@ from scission.records.store import Record, Store
 from scission.solution import Solution
 
 from . import scf
+from .bond_picture import describe_active_bond
 from .casscf import finish_casscf, solve_casscf
 from .compare import likeness
 from .molecule import build_mole, root_overlap
@@ -53,6 +54,7 @@ def finish_reference(task: dict[str, Any], store: Store, watch: Stopwatch) -> Re
         return record
     if task["spec"]["reference"] == "CASSCF":
         solution = finish_casscf(task, record)
+        describe_active_bond(solution, task)
     else:
         mole = build_mole(task["molecule"], task["spec"]["basis"], np.array(task["positions"]))
         field = scf.put_orbitals(scf.build_field(mole, task["spec"]), carried(record, mole), record.scalars["energy"])

@@ -10,6 +10,7 @@ from pyscf import fci, mcscf
 from scission.records.store import Record, Store
 from scission.solution import Solution
 
+from .bond_picture import describe_pair_bond
 from .solutions import solution_of_field
 
 ENERGY_TOLERANCE = 1e-10
@@ -36,6 +37,8 @@ def full_ci(task: dict[str, Any], field: Any, _: Record, frozen: int, __: Store)
     solution.energy, solution.converged = float(mc.e_tot), bool(np.all(mc.fcisolver.converged))
     solution.n_correlated = sum(electrons)
     _describe(solution, mc.ci, size, electrons, frozen)
+    if electrons == (1, 1) and frozen == 0:
+        describe_pair_bond(solution, task, restricted.mo_coeff @ mc.ci @ restricted.mo_coeff.T)
     return solution
 
 

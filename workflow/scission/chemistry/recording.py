@@ -56,6 +56,7 @@ def record_of(
     values, absent = evaluate_all(solution) if diagnose else ({}, {})
     scalars: dict[str, float | int] = {"energy": solution.energy, "n_basis": len(solution.overlap)}
     scalars |= {_ENERGY_NAMES[k]: v for k, v in solution.energies.items() if k in _ENERGY_NAMES}
+    scalars |= solution.numbers
     if solution.n_correlated is not None:
         scalars["n_correlated"] = solution.n_correlated
     record = Record(

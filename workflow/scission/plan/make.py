@@ -47,7 +47,7 @@ def _expand_scan(
 ) -> tuple[list[Point], list[dict[str, Any]]]:
     """Return the points of a scan and the description of each point's calculation."""
     molecule = campaign.molecules[scan.molecule]
-    facts = molecule_facts(molecule)
+    facts, fragments = molecule_facts(molecule), [list(f) for f in path.fragments]
     points, work = [], []
     for level_name in scan.levels:
         level = campaign.levels[level_name]
@@ -57,7 +57,7 @@ def _expand_scan(
             key = point_key(reference, level.correlation, level.correlates_valence_only)
             coordinate = tuple(float(v) for v in value)
             points.append(Point(name, level_name, i + 1, coordinate, path.names, key, reference))
-            work.append(_describe(level, facts, spec, points[-1], positions))
+            work.append(_describe(level, facts, spec, points[-1], positions) | {"fragments": fragments})
         if level.correlation in _CARRIES_AMPLITUDES:
             _add_neighbours(work[-len(path.values) :], equilibrium_guess_angstrom(molecule, scan))
     return points, work

@@ -53,6 +53,15 @@ SCALARS = (
     Field("energy_nuclear", "f8", "hartree", (), "repulsion of the nuclei"),
     Field("n_basis", "i8", "1", (), "number of basis functions"),
     Field("n_correlated", "i8", "1", (), "number of correlated electrons"),
+    Field("bond_order", "f8", "1", (), "effective bond order from the active natural occupations"),
+    Field("bond_covalent", "f8", "1", (), "weight without charge transfer, orthogonal localised orbitals"),
+    Field("bond_ionic_first", "f8", "1", (), "weight of electrons moved to the first fragment, orthogonal"),
+    Field("bond_ionic_second", "f8", "1", (), "weight of electrons moved to the second fragment, orthogonal"),
+    Field("vb_covalent", "f8", "1", (), "weight of the covalent structure, non-orthogonal fragment orbitals"),
+    Field("vb_ionic_first", "f8", "1", (), "weight of both electrons on the first fragment, non-orthogonal"),
+    Field("vb_ionic_second", "f8", "1", (), "weight of both electrons on the second fragment, non-orthogonal"),
+    Field("vb_captured", "f8", "1", (), "share of the wavefunction that the fragments' orbitals capture"),
+    Field("vb_overlap", "f8", "1", (), "overlap of the two fragments' orbitals"),
     Field("wall_s", "f8", "s", (), "wall time of the calculation"),
     Field("cpu_s", "f8", "s", (), "processor time of the calculation"),
     Field("peak_memory_mb", "f8", "MB", (), "largest resident memory of the process"),
@@ -77,6 +86,13 @@ ARRAYS = (
         "active", "i8", "1", ("part",), "inactive orbitals, active orbitals and active electrons of a CASSCF"
     ),
     Field("ci", "f8", "1", ("state", "alpha_string", "beta_string"), "CI vectors of the active space"),
+    Field(
+        "transfer_weights",
+        "f8",
+        "1",
+        ("electron",),
+        "weights of configurations by the number of active electrons on the first fragment, from 0",
+    ),
 )
 
 TOO_LARGE_TO_GATHER = tuple(item.name for item in ARRAYS if {"ao", "alpha_string"} & set(item.shape))
