@@ -52,19 +52,24 @@ def coupled_cluster(task: dict[str, Any], field: Any, reference: Record, frozen:
 def make_solver(field: Any, frozen: int) -> Any:
     """Return the engine's CCSD object with our tolerances."""
     if isinstance(field, rohf.ROHF):
-        field = semicanonical(field)
+        field = semicanonical(field, frozen)
     solver = cc.CCSD(field, frozen=frozen or None)
     solver.conv_tol, solver.conv_tol_normt, solver.max_cycle = ENERGY_TOLERANCE, AMPLITUDE_TOLERANCE, MAX_CYCLES
     return solver
 
 
-def semicanonical(field: Any) -> Any:
-    """Return an unrestricted field with ROHF's occupied spaces, each spin's Fock matrix diagonal within them."""
+def semicanonical(field: Any, frozen: int = 0) -> Any:
+    """Return an unrestricted field with ROHF's occupied spaces, each spin's Fock matrix diagonal within them.
+
+    The ``frozen`` lowest orbitals keep their space, so that what is frozen are ROHF's own core orbitals.
+    """
     result = field.to_uhf()
     fock = np.asarray(result.get_fock(dm=result.make_rdm1()))
     coeff, energy = np.array(result.mo_coeff), np.array(result.mo_energy, dtype=float)
+    core = np.arange(coeff.shape[2]) < frozen
     for s in range(2):
-        for space in (result.mo_occ[s] > 0.5, result.mo_occ[s] < 0.5):
+        occupied = result.mo_occ[s] > 0.5
+        for space in (core, occupied & ~core, ~occupied):
             if np.any(space):
                 block = coeff[s][:, space]
                 energy[s, space], rotation = np.linalg.eigh(block.T @ fock[s] @ block)
