@@ -33,6 +33,13 @@ class Solution:
         state_energies: (n_states,) total energies of the states in the adiabatic order, hartree.
         natural_occupations: (n,) spin-summed natural occupations, decreasing; of the active
             space for CASSCF, of the total density for unrestricted references.
+        spin_occupations: (2, n) natural occupations, 0 to 1, of the alpha and of the beta density of an
+            active space or of full configuration interaction, each decreasing.
+        orbital_weights: (n, 4) probability that a natural orbital of the active space is empty, holds
+            one alpha, one beta electron, or both; from the one- and two-particle densities.
+        bond_orders: (n_bonds,) Mayer bond orders of the stretched bonds.
+        cc_occupations: (n_mo,) natural occupations of the coupled-cluster density, decreasing.
+        fractional_occupations: (n_spin, n_mo) occupations, 0 to 1, of a determinant at finite temperature.
         triplet_stability: lowest eigenvalue of the restricted determinant's triplet stability
             matrix, hartree (negative: an unrestricted solution lies lower).
         leading_weight: squared weight of the leading configuration in natural orbitals, C0^2.
@@ -61,6 +68,11 @@ class Solution:
     energies: dict[str, float] = field(default_factory=dict)
     state_energies: Array | None = None
     natural_occupations: Array | None = None
+    spin_occupations: Array | None = None
+    orbital_weights: Array | None = None
+    bond_orders: Array | None = None
+    cc_occupations: Array | None = None
+    fractional_occupations: Array | None = None
     triplet_stability: float | None = None
     leading_weight: float | None = None
     t1: tuple[Array, ...] | None = None

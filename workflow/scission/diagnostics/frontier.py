@@ -2,8 +2,6 @@
 
 from __future__ import annotations
 
-import numpy as np
-
 from scission.solution import Solution
 
 from .types import Absent

@@ -72,6 +72,13 @@ ARRAYS = (
     Field("state_energies", "f8", "hartree", ("state",), "total energies of the states, adiabatic order"),
     Field("state_labels", "i8", "1", ("state",), "label that follows each state through crossings"),
     Field("natural_occupations", "f8", "1", ("orbital",), "spin-summed natural occupations, decreasing"),
+    Field(
+        "orbital_weights",
+        "f8",
+        "1",
+        ("orbital", "filling"),
+        "probability of each natural orbital to be empty, hold alpha, hold beta, hold both",
+    ),
     Field("orbital_energies", "f8", "hartree", ("spin", "mo"), "orbital energies of the reference"),
     Field("dipole", "f8", "e*bohr", ("xyz",), "dipole moment of the reference"),
     Field(
