@@ -13,10 +13,12 @@ from scission.solution import Solution
 
 from . import scf
 from .active_space import ActiveSpace, choose_space
+from .bond_orders import mayer_orders
+from .ci_vectors import analyse_vector, spin_densities
 from .fragments import fragment_densities
 from .molecule import build_mole, root_overlap
 from .reference import solve_reference
-from .solutions import dipole_moment
+from .solutions import dipole_moment, take_facts
 
 Array = NDArray[np.float64]
 
@@ -88,7 +90,10 @@ def finish_casscf(task: dict[str, Any], record: Record) -> Solution:
     mc = casci_object(mole, task["spec"], record.arrays["active"], orbital_step=False)
     _, inverse_root = root_overlap(mole)
     coeff = inverse_root @ record.arrays["mo_lowdin"][0]
-    return _solution(task, mole, mc, coeff, list(record.arrays["ci"]), record.arrays["state_energies"], True)
+    solution = _solution(task, mole, mc, coeff, list(record.arrays["ci"]), record.arrays["state_energies"], True)
+    if "state_labels" in record.arrays:
+        solution.extra["state_labels"] = record.arrays["state_labels"]
+    return solution
 
 
 def _begin(task: dict[str, Any], store: Store, mole: gto.Mole, start: dict[str, Any]) -> tuple[Any, ...] | None:
@@ -158,15 +163,16 @@ def _solution(
     n_core, n_active = int(mc.ncore), int(mc.ncas)
     order = np.argsort(energies, kind="stable")
     vectors, energies = [vectors[i] for i in order], np.asarray(energies, dtype=float)[order]
-    dm1, s2, occupations, weight = _describe(mc, vectors[0], diagnose)
-    density = 2.0 * coeff[:, :n_core] @ coeff[:, :n_core].T
-    active = coeff[:, n_core : n_core + n_active]
+    by_spin = spin_densities(vectors[0], n_active, mc.nelecas)
+    dm1 = by_spin[0] + by_spin[1]
+    core, active = coeff[:, :n_core] @ coeff[:, :n_core].T, coeff[:, n_core : n_core + n_active]
+    alpha, beta = (core + active @ d @ active.T for d in by_spin)
     occ = np.zeros((1, coeff.shape[1]))
     occ[0, :n_core] = 2.0
     occ[0, n_core : n_core + n_active] = np.diag(dm1)
     root, _ = root_overlap(mole)
     overlap = root @ root
-    return Solution(
+    solution = Solution(
         reference="CASSCF",
         correlation="none",
         converged=True,
@@ -176,13 +182,11 @@ def _solution(
         mo_coeff=coeff[None],
         mo_occ=occ,
         overlap=overlap,
-        s2=s2,
+        s2=float(fci.spin_op.spin_square0(vectors[0], n_active, mc.nelecas)[0]),
         energies={"reference": float(energies[0]), "nuclear": float(mole.energy_nuc())},
         state_energies=energies,
-        natural_occupations=occupations,
-        leading_weight=weight,
         n_inactive=n_core,
-        dipole=dipole_moment(mc._scf, density + active @ dm1 @ active.T),
+        dipole=dipole_moment(mc._scf, alpha + beta),
         extra={
             "mo_lowdin": (root @ coeff)[None],
             "mo_occ": occ,
@@ -190,19 +194,10 @@ def _solution(
             "active": np.array([n_core, n_active, sum(mc.nelecas)]),
         },
     )
-
-
-def _describe(mc: Any, vector: Array, diagnose: bool) -> tuple[Array, float, Array | None, float | None]:
-    """Return density matrix, <S^2>, natural occupations and leading weight of one CI vector."""
-    size, electrons = mc.ncas, mc.nelecas
-    dm1 = fci.direct_spin1.make_rdm1(vector, size, electrons)
-    s2 = float(fci.spin_op.spin_square0(vector, size, electrons)[0])
-    if not diagnose:
-        return dm1, s2, None, None
-    values, rotation = np.linalg.eigh(dm1)
-    values, rotation = values[::-1], rotation[:, ::-1]
-    turned = fci.addons.transform_ci(vector, electrons, rotation)
-    return dm1, s2, values.copy(), float(np.max(turned**2))
+    if diagnose:
+        take_facts(solution, analyse_vector(vectors[0], n_active, mc.nelecas))
+        solution.bond_orders = mayer_orders(mole, alpha, beta, task.get("bonds", ()), overlap)
+    return solution
 
 
 def _better(new: Solution, old: Solution) -> bool:

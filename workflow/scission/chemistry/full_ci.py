@@ -11,13 +11,12 @@ from scission.records.store import Record, Store
 from scission.solution import Solution
 
 from .bond_picture import describe_pair_bond
-from .solutions import solution_of_field
+from .ci_vectors import analyse_vector
+from .solutions import solution_of_field, take_facts
 
 ENERGY_TOLERANCE = 1e-10
 MAX_CYCLES = 300
 _SPIN_SHIFT = 0.5
-_SMALL_ENOUGH_TO_TURN = 12
-"""Up to this many orbitals the vector is turned to natural orbitals for the leading weight."""
 
 
 def full_ci(task: dict[str, Any], field: Any, _: Record, frozen: int, __: Store) -> Solution:
@@ -43,14 +42,10 @@ def full_ci(task: dict[str, Any], field: Any, _: Record, frozen: int, __: Store)
 
 
 def _describe(solution: Solution, vector: Any, size: int, electrons: tuple[int, int], frozen: int) -> None:
-    """Add natural occupations, the leading weight where the vector is small, and the spin of the state."""
-    density = fci.direct_spin1.make_rdm1(vector, size, electrons)
-    values, rotation = np.linalg.eigh(density)
-    solution.natural_occupations, solution.n_inactive = values[::-1].copy(), frozen
+    """Add natural occupations, what a vector that is not too long says of them, and the spin of the state."""
+    take_facts(solution, analyse_vector(vector, size, electrons))
+    solution.n_inactive = frozen
     solution.s2 = float(fci.spin_op.spin_square0(vector, size, electrons)[0])
-    if size <= _SMALL_ENOUGH_TO_TURN:
-        turned = fci.addons.transform_ci(vector, electrons, rotation[:, ::-1])
-        solution.leading_weight = float(np.max(turned**2))
 
 
 def _shared_orbitals(field: Any) -> Any:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from typing import Any
 
 import numpy as np
@@ -11,14 +12,19 @@ from pyscf.lib import current_memory
 from scission.solution import Solution
 
 from . import scf
+from .bond_orders import mayer_orders
+from .ci_vectors import VectorFacts
 from .molecule import root_overlap
 from .orbitals import natural_occupations
 
 
-def solution_of_field(field: Any, spec: dict[str, Any], diagnose: bool) -> Solution:
+def solution_of_field(
+    field: Any, spec: dict[str, Any], diagnose: bool, bonds: Sequence[Sequence[int]] = ()
+) -> Solution:
     """Return a mean-field reference as a Solution.
 
-    ``diagnose`` adds what costs more than a look: stability eigenvalue and natural occupations.
+    ``diagnose`` adds what costs more than a look: stability eigenvalue, natural occupations and the
+    orders of ``bonds`` (pairs of atoms).
     """
     mole: gto.Mole = field.mol
     orbitals = scf.orbitals_of(field)
@@ -40,7 +46,23 @@ def solution_of_field(field: Any, spec: dict[str, Any], diagnose: bool) -> Solut
     )
     if diagnose:
         _diagnose(field, solution)
+        alpha, beta = densities_by_spin(field)
+        solution.bond_orders = mayer_orders(mole, alpha, beta, bonds, solution.overlap)
     return solution
+
+
+def densities_by_spin(field: Any) -> tuple[Any, Any]:
+    """Return the alpha and beta densities, each (n_ao, n_ao), of any determinant."""
+    density = np.asarray(field.make_rdm1())
+    return (density[0], density[1]) if density.ndim == 3 else (density / 2.0, density / 2.0)
+
+
+def take_facts(solution: Solution, facts: VectorFacts) -> None:
+    """Give a Solution what the CI vector of its active space (or full CI) says."""
+    solution.natural_occupations = facts.natural_occupations
+    solution.spin_occupations = facts.spin_occupations
+    solution.leading_weight = facts.leading_weight
+    solution.orbital_weights = facts.orbital_weights
 
 
 def dipole_moment(field: Any, density: Any = None) -> Any:
