@@ -68,9 +68,11 @@ class Session:
     verbose: bool
     prepare: Callable[[], None]
     display: Display = field(init=False)
+    halt: Halt = field(init=False)
 
     def __post_init__(self) -> None:
         self.display = Display(self.layout)
+        self.halt = Halt(self.layout)
 
     def go(self) -> int:
         """Settle what an earlier run left, run the engine, salvage, sum up."""
@@ -79,7 +81,7 @@ class Session:
         if engine.is_informative(self.command.extra):
             tell(str(self.command))
             return engine.call(self.command, None)
-        with stop_on_signals(self.layout):
+        with self.halt.on_termination():
             code = self._call(self.command)
             if code not in (0, engine.INTERRUPTED):
                 self._show_trouble()
@@ -89,9 +91,12 @@ class Session:
     def _call(self, command: engine.Command) -> int:
         tell(str(command))
         log = None if self.verbose else self.layout.engine_log
-        code = engine.call(command, log, lambda pid: self.run.note(engine=identity(pid)), self._tick)
+        code = engine.call(command, log, self._started, self._tick, self.halt)
         self.display.end()
         return code
+
+    def _started(self, pid: int) -> None:
+        self.run.note(engine=identity(pid))
 
     def _salvage(self) -> int:
         """Bring together what there is: jobs that vanished must not keep the others' results back."""
@@ -129,28 +134,40 @@ def has_failures(path: Path) -> bool:
         return any(True for _ in csv.DictReader(handle))
 
 
-@contextmanager
-def stop_on_signals(layout: Layout) -> Iterator[None]:
-    """Turn a request to end this command into an orderly stop of engine and workers.
+class Halt:
+    """An orderly stop of engine and workers, once; what they have finished is kept.
 
-    The engine by itself would wait for all its jobs; what they have finished is kept either way.
+    The engine by itself would wait for all its jobs.
     """
 
-    def stop(number: int, frame: FrameType | None) -> None:  # noqa: ARG001
-        for job in live_workers(layout):
-            who = read_json(layout.worker(job)) or {}
+    def __init__(self, layout: Layout) -> None:
+        self.layout = layout
+        self.done = False
+
+    def __call__(self) -> None:
+        """Interrupt the workers and the engine of this run."""
+        if self.done:
+            return
+        self.done = True
+        engine_process = (read_json(self.layout.run_file) or {}).get("engine") or {}
+        workers = [read_json(self.layout.worker(job)) or {} for job in live_workers(self.layout)]
+        for who in [*workers, engine_process]:
             if is_alive(who):
                 os.kill(int(who["pid"]), signal.SIGINT)
-        who = (read_json(layout.run_file) or {}).get("engine") or {}
-        if is_alive(who):
-            os.kill(int(who["pid"]), signal.SIGINT)
-        raise KeyboardInterrupt
 
-    previous = signal.signal(signal.SIGTERM, stop)
-    try:
-        yield
-    finally:
-        signal.signal(signal.SIGTERM, previous)
+    @contextmanager
+    def on_termination(self) -> Iterator[None]:
+        """Stop when this command is told to end (SIGTERM)."""
+
+        def stop(number: int, frame: FrameType | None) -> None:  # noqa: ARG001
+            self()
+            raise KeyboardInterrupt
+
+        previous = signal.signal(signal.SIGTERM, stop)
+        try:
+            yield
+        finally:
+            signal.signal(signal.SIGTERM, previous)
 
 
 class Display:

@@ -6,6 +6,7 @@ import os
 import shlex
 import subprocess
 import sys
+import time
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 from pathlib import Path
@@ -121,39 +122,48 @@ def call(
     log: Path | None,
     started: Callable[[int], None] = lambda _: None,
     tick: Callable[[], None] = lambda: None,
-    tick_s: float = 0.5,
+    halt: Callable[[], None] = lambda: None,
 ) -> int:
-    """Run the engine to its end and return its exit status.
+    """Run the engine to its end and return its exit status, ``INTERRUPTED`` if a person stopped it.
 
     Args:
         log: file for what it says; None lets it speak to the terminal.
         started: told the number of its process.
-        tick: called about every ``tick_s`` seconds meanwhile.
+        tick: called twice a second meanwhile.
+        halt: called some seconds after an interrupt that did not reach the engine by itself.
     """
     if log is None:
-        return _wait(subprocess.Popen(command.words(), env=environment()), started, tick, tick_s)
+        return _wait(subprocess.Popen(command.words(), env=environment()), started, tick, halt)
     log.parent.mkdir(parents=True, exist_ok=True)
     with log.open("wb") as out:
         process = subprocess.Popen(command.words(), env=environment(), stdout=out, stderr=subprocess.STDOUT)
-        return _wait(process, started, tick, tick_s)
+        return _wait(process, started, tick, halt)
 
 
 INTERRUPTED = 130
+_TICK_S = 0.5
+_GRACE_S = 2.0
+"""A terminal's interrupt reaches engine and workers too; a second one at once would cut their tidying up."""
 
 
 def _wait(
-    process: subprocess.Popen[bytes], started: Callable[[int], None], tick: Callable[[], None], tick_s: float
+    process: subprocess.Popen[bytes],
+    started: Callable[[int], None],
+    tick: Callable[[], None],
+    halt: Callable[[], None],
 ) -> int:
     started(process.pid)
-    interrupted = False
+    interrupted = float("inf")
     while True:
         try:
-            code = process.wait(timeout=tick_s)
-            return INTERRUPTED if interrupted else code
+            code = process.wait(timeout=_TICK_S)
+            return code if interrupted == float("inf") else INTERRUPTED
         except subprocess.TimeoutExpired:
             tick()
+            if time.monotonic() > interrupted + _GRACE_S:
+                halt()
         except KeyboardInterrupt:
-            interrupted = True
+            interrupted = min(interrupted, time.monotonic())
             print("\nstopping: waiting for the engine to end its jobs", file=sys.stderr, flush=True)
 
 
