@@ -25,8 +25,12 @@ BREAKING = 0.1
 stretched to twice its length; spin polarisation of other electrons stays below (own measurement)."""
 
 _FRACTIONAL = 0.02
-_P_BLOCK = {z for first in (5, 13, 31, 49, 81) for z in range(first, first + 4)}
-"""Groups 13 to 16: two such atoms share more than one bond, and their p shells are one set."""
+_AXIAL_SHARE = 0.65
+"""Part of the axial valence orbitals of the bonded atoms that must lie in the breaking orbitals: hybrids
+mix s into them, so less than all is normal (0.8 to 1.0 for fifteen bonds of main-group atoms, 0.5 and
+less with unpaired electrons across the bond on one or both atoms; own measurement)."""
+_GROUP = {first + k: 13 + k for first in (5, 13, 31, 49, 81) for k in range(4)}
+"""Groups 13 to 16 by atomic number."""
 
 
 @dataclass
@@ -78,6 +82,34 @@ def choose_space(
     return ActiveSpace(ordered, n_inactive, size, electrons, why)
 
 
+def holds_the_bond(mole: gto.Mole, density: Array, bond: list[int]) -> bool:
+    """Whether the fractionally occupied natural orbitals of ``density`` hold the bond along its axis.
+
+    Far apart, unrestricted solutions with the unpaired electrons across the bond often lie lowest; an active
+    space made of them would not describe the bond near its equilibrium.
+    """
+    root, _ = root_overlap(mole)
+    occupations, orbitals = natural_occupations(density, root)
+    active = orbitals[:, (occupations > BREAKING) & (occupations < 2 - BREAKING)]
+    axial = _axial(mole, root, bond)
+    return bool(np.sum((axial.T @ active) ** 2) > _AXIAL_SHARE * axial.shape[1])
+
+
+def _axial(mole: gto.Mole, root: Array, bond: list[int]) -> Array:
+    """Return the best valence orbital along the bond of each bonded atom, (n_ao, 2), in the Loewdin basis."""
+    axis = mole.atom_coord(bond[1]) - mole.atom_coord(bond[0])
+    axis /= np.linalg.norm(axis)
+    columns = []
+    for atom in bond:
+        shells = valence_shells(mole, [atom])
+        p_shell = [s for s in shells if s[1].endswith("p")]
+        if p_shell:
+            columns.append(_projector(mole, root, p_shell) @ axis)
+        else:
+            columns.append(_projector(mole, root, [s for s in shells if s[1].endswith("s")])[:, 0])
+    return np.array(columns).T
+
+
 def valence_shells(mole: gto.Mole, atoms: list[int]) -> list[tuple[int, str]]:
     """Return (atom, shell) of the valence shells of ``atoms``: highest s and p, and d of the transition series."""
     noble = (2, 10, 18, 36, 54, 86)
@@ -110,12 +142,8 @@ def _automatic(
 ) -> tuple[int, int, str, list[tuple[int, str]]]:
     """Return (electrons, orbitals, why, shells that must span the space or none)."""
     charges = [[elements.charge(mole.atom_symbol(a)) for a in f] for f in fragments]
-    if len(fragments) == 2 and all(len(c) == 1 and c[0] in _P_BLOCK for c in charges):
-        atoms = [f[0] for f in fragments]
-        shells = [s for s in valence_shells(mole, atoms) if s[1].endswith("p")]
-        electrons = sum((z[0] - min(f for f in (5, 13, 31, 49, 81) if f > z[0] - 4) + 1) for z in charges) - mole.charge
-        why = f"valence p shells of both atoms ({electrons} electrons in 6 orbitals): atoms of groups 13 to 16 share several bonds"
-        return electrons, 6, why, shells
+    if len(fragments) == 2 and all(len(c) == 1 and c[0] in _GROUP for c in charges):
+        return _valence_of_atoms(mole, [f[0] for f in fragments], [c[0] for c in charges])
     breaking = occupations[(occupations > BREAKING) & (occupations < 2 - BREAKING)]
     if len(breaking) >= 2:
         electrons = round(float(breaking.sum()))
@@ -126,6 +154,23 @@ def _automatic(
     open_shells = mole.spin
     why = f"no orbital breaks at this length: one pair of bond orbitals and {open_shells} singly occupied ones"
     return 2 + open_shells, 2 + open_shells, why, []
+
+
+def _valence_of_atoms(
+    mole: gto.Mole, atoms: list[int], charges: list[int]
+) -> tuple[int, int, str, list[tuple[int, str]]]:
+    """Return the space of two atoms of groups 13 to 16, which share several bonds.
+
+    Their p shells; with an atom of group 13 or 14, whose s electrons take part in bonding, the s shells too.
+    """
+    groups = [_GROUP[z] for z in charges]
+    with_s = min(groups) <= 14
+    shells = [s for s in valence_shells(mole, atoms) if s[1].endswith("p") or (with_s and s[1].endswith("s"))]
+    electrons = sum(g - (10 if with_s else 12) for g in groups) - mole.charge
+    orbitals = 8 if with_s else 6
+    kind = "valence s and p" if with_s else "valence p"
+    why = f"{kind} shells of both atoms ({electrons} electrons in {orbitals} orbitals): atoms of groups 13 to 16 share several bonds"
+    return electrons, orbitals, why, shells
 
 
 def _projector(mole: gto.Mole, root: Array, shells: list[tuple[int, str]]) -> Array:

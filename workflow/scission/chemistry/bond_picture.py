@@ -167,7 +167,7 @@ def pair_picture(pair: Array, parts: Partition) -> BondPicture:
 
 
 def localise(orbitals: Array, parts: Partition) -> tuple[Array, int]:
-    """Return the orbitals turned to lie on one fragment each, those of the first leading, and their number there.
+    """Return the orbitals turned to lie on one fragment each, the first one's leading, and how many it has.
 
     They diagonalise the population (Loewdin, J. Chem. Phys. 18, 365 (1950)) on the first fragment.  Two
     orbitals are one for each fragment; of more, the first has as many as its population of them rounds to.
@@ -198,7 +198,7 @@ def valence_bond(pair: Array, localised: Array, parts: Partition) -> dict[str, f
 
 
 def fragment_orbitals(localised: Array, parts: Partition) -> Array:
-    """Return the localised orbitals without the other fragment's functions, normalised, (n_ao, 2), Loewdin basis.
+    """Return the orbitals cut down to their fragment's functions, normalised, (n_ao, 2), Loewdin basis.
 
     Their phases are such that the overlap is not negative.
     """
@@ -242,7 +242,7 @@ def _count(n: int, electrons: int, n_first: int) -> NDArray[np.intp]:
 
 
 def _neutral_share(active: Active, parts: Partition, n_first: int) -> int | None:
-    """Return the active electrons of the first fragment where none is transferred; ``None`` if there is no one number.
+    """Return the first fragment's active electrons where none is transferred; ``None`` if not one number.
 
     One electron an orbital where there are as many of both, else what the neutral fragment's electrons
     leave over beside its doubly occupied orbitals.

@@ -12,12 +12,12 @@ from scission.records.store import Record, Store
 from scission.solution import Solution
 
 from . import scf
-from .active_space import ActiveSpace, choose_space
+from .active_space import ActiveSpace, choose_space, holds_the_bond
 from .bond_orders import mayer_orders
 from .ci_vectors import analyse_vector, spin_densities
 from .fragments import fragment_densities
 from .molecule import build_mole, root_overlap
-from .reference import solve_reference
+from .reference import candidates
 from .solutions import dipole_moment, take_facts
 
 Array = NDArray[np.float64]
@@ -32,8 +32,6 @@ _STEP = 0.1
 
 _MODEL_SPACE = 100
 """Determinants of the preconditioner; the default of 400 spends most of a small CASSCF diagonalising it."""
-_UNBROKEN = 0.05
-"""<S^2> below which an unrestricted singlet shows no broken bond."""
 
 
 def solve_casscf(task: dict[str, Any], store: Store) -> Solution:
@@ -113,27 +111,33 @@ def _begin(task: dict[str, Any], store: Store, mole: gto.Mole, start: dict[str, 
 
 
 def _select(task: dict[str, Any], store: Store, mole: gto.Mole) -> ActiveSpace:
-    """Choose the space from the lowest unrestricted determinant; where its bond is ionic, from neutral fragments.
+    """Choose the space from the lowest unrestricted determinant that has broken this bond, else from fragments.
 
-    The restricted determinant of an ionic bond is stable far beyond the length where the bond has turned
-    covalent, so that only the separate fragments show which orbitals the electrons of the bond end up in.
+    The determinant of an ionic bond stays closed far beyond the length where the bond has turned covalent;
+    there the separate neutral fragments show which orbitals the electrons of the bond end up in.
     """
-    helper = {**task, "spec": {**task["spec"], "reference": "UHF"}, "choose": "lowest", "stability": True, "remedy": ""}
+    bond = task["bonds"][0]
+    helper = {**task, "spec": {**task["spec"], "reference": "UHF"}, "remedy": ""}
     helper["starts"] = [{"engine": "minao"}, {"broken": True}, {"fragments": True}]
-    field, _, _ = solve_reference(helper, store)
-    density = np.asarray(field.make_rdm1()).sum(axis=0)
-    if mole.spin == 0 and abs(field.spin_square()[0]) < _UNBROKEN and len(task["fragments"]) == 2:
-        density = _neutral_density(task, density)
-    return choose_space(mole, density, task["spec"]["active_space"], task["bonds"], task["fragments"])
+    fields = sorted((f for _, f in candidates(helper, store, mole) if f.converged), key=lambda f: f.e_tot)
+    densities = [np.asarray(f.make_rdm1()).sum(axis=0) for f in fields]
+    chosen = next((d for d in densities if holds_the_bond(mole, d, bond)), None)
+    if chosen is None:
+        chosen = _neutral_density(task)
+    if chosen is None:
+        chosen = densities[0]
+    return choose_space(mole, chosen, task["spec"]["active_space"], task["bonds"], task["fragments"])
 
 
-def _neutral_density(task: dict[str, Any], otherwise: Array) -> Array:
+def _neutral_density(task: dict[str, Any]) -> Array | None:
+    """Return the density of the lowest neutral split with its unpaired electrons along the bond."""
+    if len(task["fragments"]) != 2:
+        return None
     positions = np.array(task["positions"])
     a, b = task["bonds"][0]
     basis, axis = task["spec"]["basis"], positions[b] - positions[a]
-    for _, density in fragment_densities(task["molecule"], basis, positions, task["fragments"], axis):
-        return density.sum(axis=0)  # the first is the lowest neutral split
-    return otherwise
+    found = fragment_densities(task["molecule"], basis, positions, task["fragments"], axis, axial=True)
+    return next((density.sum(axis=0) for _, density in found), None)
 
 
 def _optimise(task: dict[str, Any], mole: gto.Mole, coeff: Array, ci: Any, sizes: Array, notes: dict[str, str]) -> Solution:

@@ -48,7 +48,9 @@ def analyse_vector(vector: Array, size: int, electrons: tuple[int, int]) -> Vect
     by_spin = np.array([np.linalg.eigvalsh(density)[::-1] for density in (alpha, beta)])
     if max(np.shape(vector)) <= _STRINGS_TO_TURN:
         turned = np.asarray(fci.addons.transform_ci(vector, electrons, rotation))
-        return VectorFacts(natural, by_spin, float(np.max(turned**2)), _weights_of_vector(turned, size, electrons))
+        return VectorFacts(
+            natural, by_spin, float(np.max(turned**2)), _weights_of_vector(turned, size, electrons)
+        )
     if size <= _ORBITALS_FOR_PAIRS and np.size(vector) <= _DETERMINANTS_FOR_PAIRS:
         return VectorFacts(natural, by_spin, None, _weights_of_densities(vector, size, electrons, rotation))
     return VectorFacts(natural, by_spin, None, None)

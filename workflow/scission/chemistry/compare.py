@@ -35,3 +35,13 @@ def _spaces(record: Record) -> tuple[np.ndarray, np.ndarray]:
     n_core, n_active = (int(n) for n in record.arrays["active"][:2])
     x = record.arrays["mo_lowdin"][0]
     return x[:, :n_core], x[:, n_core : n_core + n_active]
+
+
+def stability_changes(a: Record, b: Record) -> bool:
+    """Whether the triplet stability of a restricted determinant changes its sign between two neighbours.
+
+    False where one of them has no eigenvalue, or where the zero has been searched for already.
+    """
+    values = [record.diagnostics.get("triplet_stability", np.nan) for record in (a, b)]
+    searched = any("coulson_fischer" in record.notes for record in (a, b))
+    return bool(values[0] * values[1] < 0.0) and not searched

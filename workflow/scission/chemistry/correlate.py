@@ -9,16 +9,18 @@ import numpy as np
 from pyscf import gto
 from pyscf.data.elements import chemcore
 
+from scission.diagnostics import DIAGNOSTICS
 from scission.records.store import Record, Store
 from scission.solution import Solution
 
 from . import scf
 from .coupled_cluster import coupled_cluster
+from .extras import EXTRAS
 from .full_ci import full_ci
 from .molecule import build_mole
 from .nevpt2 import nevpt2
 from .perturbation import second_order_energy
-from .recording import Stopwatch, record_of
+from .recording import Stopwatch, guarded, record_of
 from .reference import carried
 
 METHODS: dict[str, Callable[[dict[str, Any], Any, Record, int, Store], Solution]] = {
@@ -30,7 +32,7 @@ METHODS: dict[str, Callable[[dict[str, Any], Any, Record, int, Store], Solution]
 }
 """Correlation -> function (task, mean field, reference record, frozen orbitals, store) -> Solution."""
 
-_FROM_REFERENCE = ("s2", "s2_excess", "uhf_hono", "uhf_luno", "triplet_stability", "hono", "luno", "c0_squared", "homo_lumo_gap")
+_SCALARS_OF_REFERENCE = ("bond_", "vb_", "coulson_fischer")
 
 
 def correlate_point(task: dict[str, Any], store: Store, watch: Stopwatch) -> Record:
@@ -45,11 +47,24 @@ def correlate_point(task: dict[str, Any], store: Store, watch: Stopwatch) -> Rec
     mole = build_mole(task["molecule"], task["spec"]["basis"], np.array(task["positions"]))
     field = prepared_field(task, mole, reference)
     frozen = chemcore(mole) if task["frozen_core"] else 0
+    if "calculation" in task:
+        return _extra(task, field, reference, frozen, store, watch)
     solution = METHODS[task["correlation"]](task, field, reference, frozen, store)
     solution.correlation = task["correlation"]
-    record = record_of(solution, "point", task, watch)
+    bounds = {"reference determinant": solution.energies["reference"]} if task["correlation"] == "FCI" else {}
+    record = guarded(record_of(solution, "point", task, watch), solution, bounds)
     record.reference_stamp = reference.stamp
     _inherit(record, reference)
+    return record
+
+
+def _extra(
+    task: dict[str, Any], field: Any, reference: Record, frozen: int, store: Store, watch: Stopwatch
+) -> Record:
+    """Return the record of a costly diagnostic's own calculation."""
+    solution = EXTRAS[task["calculation"]](task, field, reference, frozen, store)
+    record = record_of(solution, "point", task, watch, calculation=task["calculation"])
+    record.reference_stamp = reference.stamp
     return record
 
 
@@ -63,12 +78,12 @@ def prepared_field(task: dict[str, Any], mole: gto.Mole, reference: Record) -> A
 
 def _inherit(record: Record, reference: Record) -> None:
     """Take over the diagnostics and remarks of the reference that the correlated record lacks."""
-    for name in _FROM_REFERENCE:
-        if name in reference.diagnostics and name not in record.diagnostics:
+    for name, diagnostic in DIAGNOSTICS.items():
+        if diagnostic.of_reference and name in reference.diagnostics and name not in record.diagnostics:
             record.diagnostics[name] = reference.diagnostics[name]
             record.absent.pop(name, None)
     record.notes = {**reference.notes, **record.notes}
-    pictures = {n: v for n, v in reference.scalars.items() if n.startswith(("bond_", "vb_"))}
+    pictures = {n: v for n, v in reference.scalars.items() if n.startswith(_SCALARS_OF_REFERENCE)}
     record.scalars = {**pictures, **record.scalars}
     if "transfer_weights" in reference.arrays:
         record.arrays.setdefault("transfer_weights", reference.arrays["transfer_weights"])

@@ -41,7 +41,7 @@ def coupled_cluster(task: dict[str, Any], field: Any, reference: Record, frozen:
     solution = solution_of_field(field, task["spec"], diagnose=False)
     solution.n_correlated = sum(solution.n_electrons) - 2 * frozen
     solver = make_solver(field, frozen)
-    how = _solve(solver, task, reference, frozen, store)
+    how = solve(solver, task, reference, frozen, store)
     if how:
         solution.notes["amplitudes"] = how
     wanted = task["correlation"] == "CCSD(T)" and solver.converged
@@ -78,7 +78,7 @@ def semicanonical(field: Any, frozen: int = 0) -> Any:
     return result
 
 
-def _solve(solver: Any, task: dict[str, Any], reference: Record, frozen: int, store: Store) -> str:
+def solve(solver: Any, task: dict[str, Any], reference: Record, frozen: int, store: Store) -> str:
     """Converge the amplitudes; return in words what it took, empty for the usual way."""
     remedy = task.get("remedy", "")
     if remedy in REMEDIES:

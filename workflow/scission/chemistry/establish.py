@@ -15,7 +15,7 @@ from .casscf import finish_casscf, solve_casscf
 from .compare import likeness
 from .molecule import build_mole, root_overlap
 from .orbitals import Orbitals, not_orthonormal
-from .recording import Stopwatch, record_of
+from .recording import Stopwatch, guarded, record_of
 from .reference import carried, lowdin, solve_reference
 from .solutions import solution_of_field
 
@@ -58,10 +58,10 @@ def finish_reference(task: dict[str, Any], store: Store, watch: Stopwatch) -> Re
     else:
         mole = build_mole(task["molecule"], task["spec"]["basis"], np.array(task["positions"]))
         field = scf.put_orbitals(scf.build_field(mole, task["spec"]), carried(record, mole), record.scalars["energy"])
-        solution = solution_of_field(field, task["spec"], diagnose=True)
+        solution = solution_of_field(field, task["spec"], diagnose=True, bonds=task.get("bonds", ()))
         _keep_orbitals(solution)
     solution.notes = {**record.notes, **solution.notes, **task.get("notes", {})}
-    finished = record_of(solution, "reference", task, watch)
+    finished = guarded(record_of(solution, "reference", task, watch), solution, _upper_bounds(task, record))
     finished.scalars["wall_s"] += record.scalars.get("wall_s", 0.0)
     finished.scalars["cpu_s"] += record.scalars.get("cpu_s", 0.0)
     finished.attempts, finished.history = record.attempts, record.history
@@ -83,6 +83,25 @@ def _solve(task: dict[str, Any], store: Store, watch: Stopwatch) -> Record:
         record.status, record.reason = "failed", "raised"
         record.message = f"orbitals are not orthonormal (largest deviation {error:.1e})"
     return record
+
+
+def _upper_bounds(task: dict[str, Any], record: Record) -> dict[str, float]:
+    """Return energies that the reference cannot lie above: for one active space state, the determinant's."""
+    if task["spec"]["reference"] != "CASSCF" or task["spec"].get("states", 1) > 1:
+        return {}
+    mole = build_mole(task["molecule"], task["spec"]["basis"], np.array(task["positions"]))
+    field = scf.converge(scf.build_field(mole, task["spec"]), _closest_determinant(record, mole))
+    return {"restricted determinant": float(field.e_tot)} if field.converged else {}
+
+
+def _closest_determinant(record: Record, mole: Any) -> np.ndarray:
+    """Return the density of the determinant of the most occupied orbitals, as a restricted field starts from."""
+    orbitals = carried(record, mole)
+    order = np.argsort(-orbitals.occ[0], kind="stable")
+    occ = np.zeros_like(orbitals.occ)
+    occ[0, order[: mole.nelec[1]]] = 2.0
+    occ[0, order[mole.nelec[1] : mole.nelec[0]]] = 1.0
+    return Orbitals(orbitals.coeff, occ).density()
 
 
 def _keep_orbitals(solution: Solution) -> None:

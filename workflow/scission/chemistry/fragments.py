@@ -51,12 +51,18 @@ class Split:
 
 
 def fragment_densities(
-    facts: dict[str, Any], basis: dict[str, str], positions: Array, fragments: Sequence[Sequence[int]], axis: Array
+    facts: dict[str, Any],
+    basis: dict[str, str],
+    positions: Array,
+    fragments: Sequence[Sequence[int]],
+    axis: Array,
+    axial: bool = False,
 ) -> Iterator[tuple[str, Array]]:
     """Yield (label, density (2, n_ao, n_ao)) of the most promising splits, neutral ones first.
 
     Atoms whose density is not spherical are tried with each of three orientations to ``axis`` (the bond);
-    the orientation whose energy is lowest in one evaluation is kept, for each split.
+    the orientation whose energy is lowest in one evaluation is kept, for each split, or with ``axial`` the
+    one whose unpaired electrons lie along the bond.
     """
     mole = build_mole(facts, basis, positions)
     field = uhf.UHF(mole)
@@ -65,9 +71,9 @@ def fragment_densities(
         best: tuple[float, Array] | None = None
         for choice in product(*options):
             density = _assemble(mole, fragments, choice, split.flipped)
-            energy = float(field.energy_tot(dm=density))
-            if best is None or energy < best[0]:
-                best = energy, density
+            score = -_spread(mole, density[0] - density[1], axis) if axial else float(field.energy_tot(dm=density))
+            if best is None or score < best[0]:
+                best = score, density
         if best is not None:
             yield split.label, best[1]
 
@@ -163,6 +169,18 @@ def _orientations(
         if not any(np.allclose(density, known, atol=1e-4) for known in rotated):
             rotated.append(density)
     return rotated
+
+
+def _spread(mole: gto.Mole, spin_density: Array, axis: Array) -> float:
+    """Return how far the unpaired electrons of all atoms reach along the axis, summed over atoms, bohr^2."""
+    unit = axis / np.linalg.norm(axis)
+    total = 0.0
+    for atom, (first, last) in enumerate(mole.aoslice_by_atom()[:, 2:]):
+        with mole.with_common_orig(mole.atom_coord(atom)):
+            moments = mole.intor("int1e_rr").reshape(3, 3, mole.nao, mole.nao)
+        along = np.einsum("i,ijpq,j->pq", unit, moments, unit)[first:last, first:last]
+        total += abs(float(np.einsum("pq,qp->", along, spin_density[first:last, first:last])))
+    return total
 
 
 def _frame(axis: Array) -> Array:

@@ -35,6 +35,8 @@ def nevpt2(task: dict[str, Any], field: Any, reference: Record, _: int, __: Stor
         energies.append(float(np.atleast_1d(mc.e_tot)[root] + second_order.kernel()))
     order = np.argsort(energies, kind="stable")
     solution.state_energies = np.array(energies)[order]
+    if "state_labels" in solution.extra:
+        solution.extra["state_labels"] = solution.extra["state_labels"][order]
     solution.energies["correlation"] = energies[order[0]] - solution.energy
     solution.energy = energies[order[0]]
     solution.n_correlated = int(mole.nelectron)

@@ -23,6 +23,8 @@ from scission.physics import PHYSICS_VERSION
 from scission.records.store import Record
 from scission.solution import Solution
 
+from .guards import violation
+
 _ENERGY_NAMES = {
     "reference": "energy_reference",
     "correlation": "energy_correlation",
@@ -50,10 +52,13 @@ class Stopwatch:
 
 
 def record_of(
-    solution: Solution, kind: str, task: dict[str, Any], watch: Stopwatch, diagnose: bool = True
+    solution: Solution, kind: str, task: dict[str, Any], watch: Stopwatch, diagnose: bool = True, calculation: str = ""
 ) -> Record:
-    """Return the record of a finished calculation; unconverged ones say so in status and message."""
-    values, absent = evaluate_all(solution) if diagnose else ({}, {})
+    """Return the record of a finished calculation; unconverged ones say so in status and message.
+
+    ``calculation`` is the extra one that was done, a key of ``diagnostics.CALCULATIONS``; "" for none.
+    """
+    values, absent = evaluate_all(solution, calculation) if diagnose else ({}, {})
     scalars: dict[str, float | int] = {"energy": solution.energy, "n_basis": len(solution.overlap)}
     scalars |= {_ENERGY_NAMES[k]: v for k, v in solution.energies.items() if k in _ENERGY_NAMES}
     scalars |= solution.numbers
@@ -79,6 +84,14 @@ def record_of(
         arrays=_arrays(solution, task),
     )
     record.scalars |= watch.cost()
+    return record
+
+
+def guarded(record: Record, solution: Solution, upper_bounds: dict[str, float]) -> Record:
+    """Return the record, turned into a failed one if the solution breaks a bound or has the wrong spin."""
+    broken = violation(solution, upper_bounds)
+    if broken is not None and record.status == "converged":
+        record.status, (record.reason, record.message) = "failed", broken
     return record
 
 
@@ -131,6 +144,7 @@ def _arrays(solution: Solution, task: dict[str, Any]) -> dict[str, np.ndarray]:
         "positions": np.array(task["positions"]),
         "state_energies": solution.state_energies,
         "natural_occupations": solution.natural_occupations,
+        "orbital_weights": solution.orbital_weights,
         "orbital_energies": solution.mo_energy,
         "dipole": solution.dipole,
         **solution.extra,

@@ -35,7 +35,7 @@ def solve_reference(task: dict[str, Any], store: Store) -> tuple[Any, gto.Mole, 
     mole = build_mole(task["molecule"], task["spec"]["basis"], np.array(task["positions"]))
     best: Any = None
     remark = ""
-    for label, field in _candidates(task, store, mole):
+    for label, field in candidates(task, store, mole):
         if best is None or _better(field, best):
             best, remark = field, label
         if task.get("choose") == "first" and field.converged:
@@ -58,7 +58,7 @@ def lowdin(record: Record) -> Orbitals:
     return Orbitals(record.arrays["mo_lowdin"], record.arrays["mo_occ"])
 
 
-def _candidates(task: dict[str, Any], store: Store, mole: gto.Mole) -> Iterator[tuple[str, Any]]:
+def candidates(task: dict[str, Any], store: Store, mole: gto.Mole) -> Iterator[tuple[str, Any]]:
     """Yield (how it was started, converged or unconverged field) of each start, one after another."""
     spec, remedy = task["spec"], task.get("remedy", "")
     for start in task["starts"]:

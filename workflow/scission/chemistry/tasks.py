@@ -12,14 +12,20 @@ from typing import Any
 from scission.records.store import Record, Store
 
 from .correlate import correlate_point
+from .coulson_fischer import add_coulson_fischer
 from .establish import establish_reference, finish_reference, swap_spins
+from .fragment_levels import compute_fragment
+from .labels import label_states
 from .recording import Stopwatch
 
 TASKS: dict[str, Callable[[dict[str, Any], Store, Stopwatch], Record]] = {
     "reference": establish_reference,
     "swap": swap_spins,
+    "label": label_states,
     "finish": finish_reference,
+    "coulson_fischer": add_coulson_fischer,
     "correlate": correlate_point,
+    "fragment": compute_fragment,
 }
 
 

@@ -45,6 +45,7 @@ def walk_chain(chain: dict[str, Any], store: Store, run: Run) -> dict[str, Any]:
     else:
         follow_from_anchor(state)
     crossings = reconcile(state)
+    state.label()
     state.finish()
     return {
         "name": chain["name"],

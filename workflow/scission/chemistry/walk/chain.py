@@ -112,6 +112,16 @@ class ChainState:
         """Exchange alpha and beta of a node's record."""
         self._task(node, {"kind": "swap"})
 
+    def label(self) -> None:
+        """Label averaged states by their overlap with the neighbour's, outward from the start."""
+        if self.chain["spec"].get("states", 1) < 2 or not self.good(self.start):
+            return
+        self._task(self.start, {"kind": "label"})
+        for node, _ in self.outward(self.start):
+            nearer = self.good_towards(node, self.start)
+            if self.good(node) and nearer is not None:
+                self._task(node, {"kind": "label", "from": nearer.key})
+
     def finish(self) -> None:
         """Evaluate diagnostics of the nodes that are points and lack them or have changed."""
         for node in self.nodes:
@@ -163,5 +173,5 @@ class ChainState:
         self._records.pop(node.key, None)
         new = self.record(node)
         changed = old is None or new is None or new.stamp != old.stamp or what["kind"] == "swap"
-        if what["kind"] != "finish" and changed:
+        if what["kind"] not in ("finish", "label") and changed:
             self._touched.add(node.key)
