@@ -36,6 +36,7 @@ _CORRELATION = {
     "NEVPT2": (1.0, 3.5),
 }
 _UNRESTRICTED_FACTOR = 3.0
+_EXTRA_START_S = 1.5
 _DETERMINANTS_PER_SECOND = 4.0e4
 _BASE_MEMORY_MB = 500.0
 
@@ -60,6 +61,9 @@ def reference_seconds(molecule: dict[str, Any], spec: dict[str, Any]) -> float:
 def correlate_seconds(work: dict[str, Any]) -> float:
     """Return the expected seconds of one point's correlation, with the engine's fixed costs."""
     n = n_functions(work["molecule"], work["spec"])
+    if "price" in work:  # an extra calculation: in units of RHF with CCSD and (T)
+        at_30, power = _CORRELATION["CCSD(T)"]
+        return float(work["price"]) * (_EXTRA_START_S + at_30 * (n / 30.0) ** power)
     at_30, power = _CORRELATION[work["correlation"]]
     seconds = at_30 * (n / 30.0) ** power
     if work["spec"]["reference"] in ("UHF", "UKS", "ROHF"):

@@ -13,6 +13,8 @@ from scission.geometry import ScanPath, build_path, equilibrium_guess_angstrom
 from scission.physics import PHYSICS_VERSION
 
 from .chains import build_chain, merge_chains, molecule_facts
+from .extras import add_extras
+from .fragments import fragment_work
 from .identity import canonical, digest, point_key, reference_key, reference_spec
 from .types import Chain, Job, Plan, Point
 from .write import campaign_digest
@@ -30,15 +32,19 @@ def make_plan(campaign: Campaign, block_seconds: float = BLOCK_SECONDS) -> Plan:
     points: list[Point] = []
     chains: list[Chain] = []
     work: list[dict[str, Any]] = []
+    extra: list[dict[str, Any]] = []
     for scan_name, scan in campaign.scans.items():
         path = build_path(campaign.molecules[scan.molecule], scan)
         scan_points, scan_work = _expand_scan(campaign, scan_name, scan, path)
+        scan_points, scan_extra = add_extras(campaign, scan_points, scan_work)
         points += scan_points
         work += scan_work
+        extra += scan_extra
         chains += _scan_chains(campaign, scan_name, scan, path)
     jobs = _reference_jobs(merge_chains(chains), [w for w in work if w["correlation"] == "none"])
     owner = {key: job.id for job in jobs for key in job.payload["reference_keys"]}
-    jobs += _correlate_jobs([w for w in work if w["correlation"] != "none"], owner, block_seconds)
+    jobs += _correlate_jobs([w for w in work if w["correlation"] != "none"] + extra, owner, block_seconds)
+    jobs += _fragment_jobs(campaign, points, owner)
     return Plan(campaign, tuple(points), tuple(jobs), PHYSICS_VERSION, campaign_digest(campaign, block_seconds))
 
 
@@ -117,11 +123,12 @@ def _reference_jobs(chains: Sequence[Chain], publish: Sequence[dict[str, Any]]) 
 
 def _correlate_jobs(work: Sequence[dict[str, Any]], owner: dict[str, str], block_seconds: float) -> list[Job]:
     """Return blocks of consecutive points of a scan at one level, sized by the forecast."""
-    groups: dict[tuple[str, str], list[dict[str, Any]]] = defaultdict(list)
+    groups: dict[tuple[str, ...], list[dict[str, Any]]] = defaultdict(list)
     for item in _unique(work):
-        groups[item["scan"], item["level"]].append(item)
+        extra = (item["calculation"],) if "calculation" in item else ()
+        groups[item["scan"], item["level"], *extra].append(item)
     jobs = []
-    for (scan, level), items in groups.items():
+    for group, items in groups.items():
         seconds = forecast.correlate_seconds(items[0])
         size = max(1, math.floor(block_seconds / seconds))
         n_blocks = math.ceil(len(items) / size)
@@ -129,8 +136,21 @@ def _correlate_jobs(work: Sequence[dict[str, Any]], owner: dict[str, str], block
             block = items[b * len(items) // n_blocks : (b + 1) * len(items) // n_blocks]
             needs = tuple(dict.fromkeys(owner[i["reference_key"]] for i in block))
             memory = forecast.correlate_memory_mb(block[0])
-            name = f"{scan}.{level}"
-            jobs.append(_job("correlate", name, needs, {"points": block}, len(block), seconds * len(block), memory))
+            jobs.append(_job("correlate", ".".join(group), needs, {"points": block}, len(block), seconds * len(block), memory))
+    return jobs
+
+
+def _fragment_jobs(campaign: Campaign, points: Sequence[Point], owner: dict[str, str]) -> list[Job]:
+    """Return one job a scan, and one more for what needs references first; shared fragments come once."""
+    groups: dict[tuple[str, tuple[str, ...]], list[dict[str, Any]]] = defaultdict(list)
+    for item in fragment_work(campaign, points):
+        needs = tuple(dict.fromkeys(owner[key] for key in item.get("share_from", ())))
+        groups[item["scan"], needs].append(item)
+    jobs = []
+    for (scan, needs), items in groups.items():
+        seconds = sum(forecast.fragment_seconds(item) for item in items)
+        memory = max(forecast.correlate_memory_mb(item) for item in items)
+        jobs.append(_job("fragments", scan, needs, {"points": items}, len(items), seconds, memory))
     return jobs
 
 

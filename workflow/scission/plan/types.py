@@ -17,6 +17,7 @@ class Point:
 
     ``number`` counts from 1 along the scan; ``coordinate`` is in angstrom (first entry: the bond length),
     ``names`` names its entries.  Points that agree in everything that decides numbers share ``key``.
+    ``extras`` are (calculation, key) of the records that hold costly diagnostics of the point.
     """
 
     scan: str
@@ -26,6 +27,7 @@ class Point:
     names: tuple[str, ...]
     key: str
     reference_key: str
+    extras: tuple[tuple[str, str], ...] = ()
 
 
 @dataclass(frozen=True)

@@ -53,6 +53,7 @@ SCALARS = (
     Field("energy_nuclear", "f8", "hartree", (), "repulsion of the nuclei"),
     Field("n_basis", "i8", "1", (), "number of basis functions"),
     Field("n_correlated", "i8", "1", (), "number of correlated electrons"),
+    Field("coulson_fischer", "f8", "bohr", (), "length where the restricted determinant turns unstable"),
     Field("bond_order", "f8", "1", (), "effective bond order from the active natural occupations"),
     Field("bond_covalent", "f8", "1", (), "weight without charge transfer, orthogonal localised orbitals"),
     Field("bond_ionic_first", "f8", "1", (), "weight of electrons moved to the first fragment, orthogonal"),
