@@ -16,6 +16,7 @@ workdir: str(LAYOUT.folder)
 
 include: "workflow/rules/reference.smk"
 include: "workflow/rules/correlate.smk"
+include: "workflow/rules/fragments.smk"
 include: "workflow/rules/gather.smk"
 include: "workflow/rules/analyse.smk"
 include: "workflow/rules/report.smk"

@@ -73,6 +73,11 @@ def correlate_seconds(work: dict[str, Any]) -> float:
     return max(seconds, 0.05)
 
 
+def fragment_seconds(work: dict[str, Any]) -> float:
+    """Return the expected seconds of one fragment: its reference from several starts, and its correlation."""
+    return 3.0 * reference_seconds(work["molecule"], work["spec"]) + correlate_seconds(work)
+
+
 def reference_memory_mb(molecule: dict[str, Any], spec: dict[str, Any]) -> float:
     """Return the memory to ask for a chain of references, MB: integrals in memory and room for the engine."""
     n = n_functions(molecule, spec)

@@ -42,8 +42,8 @@ class Ledger(Store):
 
 
 def record_kind(task: dict[str, Any]) -> str:
-    """Return the kind of record a task writes: only correlated calculations make points."""
-    return "point" if task["kind"] == "correlate" else "reference"
+    """Return the kind of record a task writes: correlated calculations make points, fragments their own."""
+    return {"correlate": "point", "fragment": "fragment"}.get(task["kind"], "reference")
 
 
 def merge(previous: Record, new: Record) -> Record:

@@ -188,6 +188,9 @@ def _do(plan: dict[str, Any], work: Attempt, walk: Walk | None) -> None:
         work.total = len(plan["reference_keys"]) + len(plan["publish"])
         _walk_chains(plan, work, walk or _chemistry_walk())
         _publish(plan["publish"], work)
+    elif plan["stage"] == "fragments":
+        work.total = len(plan["points"])
+        _compute_fragments(plan["points"], work)
     else:
         work.total = len(plan["points"])
         _compute_points(plan["points"], work)
@@ -233,6 +236,17 @@ def _compute_points(points: list[Task], work: Attempt) -> None:
             again.append(task)
     for task in again:
         work.run(task)
+
+
+def _compute_fragments(items: list[Task], work: Attempt) -> None:
+    """Compute the fragments without a record, or that ran out of time or memory when less was granted."""
+    for item in items:
+        record = Ledger(work.layout.folder, item).read("fragment", item["key"], arrays=False)
+        request = pending_request(work.layout, item["key"])
+        if record is None or needs_again(record, record.reference_stamp, work.number, request):
+            work.run(item)
+        else:
+            work.keep(record)
 
 
 def _examine(item: Task, work: Attempt) -> tuple[str, Task]:

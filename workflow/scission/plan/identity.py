@@ -56,7 +56,7 @@ def reference_key(
     """
     choice = [list(b) for b in bonds] if "active_space" in spec else None
     head = canonical([PHYSICS_VERSION, "reference", molecule, spec, choice])
-    return digest(head.encode() + _geometry_bytes(positions))
+    return digest(head.encode() + geometry_bytes(positions))
 
 
 def point_key(reference: str, correlation: str, frozen_core: bool) -> str:
@@ -65,6 +65,7 @@ def point_key(reference: str, correlation: str, frozen_core: bool) -> str:
     return digest(canonical([PHYSICS_VERSION, "point", reference, correlation, frozen]))
 
 
-def _geometry_bytes(positions: NDArray[np.float64]) -> bytes:
+def geometry_bytes(positions: NDArray[np.float64]) -> bytes:
+    """Return positions (bohr), rounded, as the bytes that go into a key."""
     rounded = np.round(positions, _ROUNDING_DECIMALS) + 0.0  # adding zero turns -0.0 into 0.0
     return rounded.astype("<f8").tobytes()

@@ -154,6 +154,20 @@ def _fragment_jobs(campaign: Campaign, points: Sequence[Point], owner: dict[str,
     return jobs
 
 
+def _fragment_jobs(campaign: Campaign, points: Sequence[Point], owner: dict[str, str]) -> list[Job]:
+    """Return one job a scan, and one more for what needs references first; shared fragments come once."""
+    groups: dict[tuple[str, tuple[str, ...]], list[dict[str, Any]]] = defaultdict(list)
+    for item in fragment_work(campaign, points):
+        needs = tuple(dict.fromkeys(owner[key] for key in item.get("share_from", ())))
+        groups[item["scan"], needs].append(item)
+    jobs = []
+    for (scan, needs), items in groups.items():
+        seconds = sum(forecast.fragment_seconds(item) for item in items)
+        memory = max(forecast.correlate_memory_mb(item) for item in items)
+        jobs.append(_job("fragments", scan, needs, {"points": items}, len(items), seconds, memory))
+    return jobs
+
+
 def _job(
     stage: str, name: str, needs: tuple[str, ...], payload: dict[str, Any], n: int, seconds: float, memory: float
 ) -> Job:

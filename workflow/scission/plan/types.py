@@ -60,7 +60,7 @@ class Chain:
 
 @dataclass(frozen=True)
 class Job:
-    """One unit of work for the engine; ``payload`` is everything its worker has to know."""
+    """One unit of work (stage reference, correlate or fragments) for the engine; ``payload`` is everything its worker has to know."""
 
     id: str
     stage: str

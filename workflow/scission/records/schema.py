@@ -19,6 +19,7 @@ REASONS = {
     "memory-limit": "the calculation used up its memory budget",
     "killed": "the calculation's process was killed from outside",
     "scheduler-limit": "the scheduler was about to end the job",
+    "not-defined": "the level has no such state, as of a fragment whose share of the active space is too small",
     "reference-missing": "the reference wavefunction this point needs did not succeed",
     "not-finite": "the energy or an array is not a finite number",
     "bound-violated": "the energy lies below a bound that cannot be passed",

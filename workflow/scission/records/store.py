@@ -22,7 +22,7 @@ from scission.records.fileformat import DamagedRecordError, pack, unpack
 from scission.records.schema import SCHEMA_VERSION
 from scission.records.validate import finite_or_none, one_line, problems
 
-FOLDERS = {"point": "records", "reference": "references"}
+FOLDERS = {"point": "records", "reference": "references", "fragment": "fragments"}
 DAMAGED = "damaged"
 
 _KEY = re.compile(r"[0-9A-Za-z][0-9A-Za-z_-]{1,119}")
@@ -35,11 +35,11 @@ class Record:
 
     Attributes:
         key: identity; the file is named after it.
-        kind: ``point`` or ``reference``.
+        kind: ``point``, ``reference`` or ``fragment``.
         status: one of ``schema.STATUSES``.
         reason: key of ``schema.REASONS``.
         message: one line for a person, ASCII.
-        stage: ``reference`` or ``correlate``.
+        stage: ``reference``, ``correlate`` or ``fragment``.
         attempts: how often the calculation was started.
         remedy: remedy used in the last attempt, "" if none.
         scalars: numbers by the names of ``schema.SCALARS``.
