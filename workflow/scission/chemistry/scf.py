@@ -86,10 +86,16 @@ def is_restricted_open(field: Any) -> bool:
     return isinstance(field, rohf.ROHF)
 
 
+def has_rotations(field: Any) -> bool:
+    """Whether an occupied orbital has an empty one to mix with; hydrogen in a minimal basis has none."""
+    _, occ = orbitals_of(field).by_spin()
+    return any(bool(np.any(o > 0.5) and np.any(o < 0.5)) for o in occ)
+
+
 def follow_instability(field: Any) -> Any:
     """Follow internal instabilities until none is left, five times at most; return the lowest field."""
     for _ in range(_FOLLOWED):
-        if not field.converged:
+        if not field.converged or not has_rotations(field):
             return field
         coeff, _, stable, _ = field.stability(internal=True, external=False, return_status=True)
         if stable:
@@ -106,7 +112,7 @@ def broken_symmetry_start(restricted: Any) -> Orbitals | None:
 
     ``None`` where the determinant is stable or not a closed shell.
     """
-    if is_restricted_open(restricted) or not restricted.converged:
+    if is_restricted_open(restricted) or not restricted.converged or not has_rotations(restricted):
         return None
     coeff, stable = stability.rhf_external(restricted, return_status=True)
     if stable:
