@@ -9,7 +9,7 @@ from typing import Any
 
 import pandas as pd
 
-from scission.analysis import rows
+from scission.analysis import limits, rows
 from scission.analysis.provenance import Sources, provenance
 from scission.analysis.scan import Bond, LevelResult, conclude
 from scission.campaign import Campaign
@@ -19,7 +19,7 @@ from scission.records import Planned, Record, Store, recall
 from scission.tables import COLUMNS, frame
 from scission.thresholds import Override, Thresholds, resolve
 
-_ARRAYS = ("state_energies", "state_labels")
+_ARRAYS = ("state_energies", "state_labels", "transfer_weights")
 
 Crossings = Mapping[tuple[str, str], list[dict[str, Any]]]
 
@@ -87,14 +87,33 @@ def analyse(
         results = [_load(name, group, campaign, store, sources) for name, group in members.items()]
         molecule = campaign.molecules[campaign.scans[scan].molecule]
         bond = _bond(campaign, scan)
+        sums = {r.name: limits.fragment_sums(campaign, scan, r.level, store) for r in results}
+        for result in results:
+            result.fragment_sum = sums[result.name].neutral
         conclude(results, molecule.multiplicity, thresholds, bond, campaign.fit.models)
         for result in results:
             _add(tables, scan, result, molecule.multiplicity, thresholds, bond)
+            _add_limits(tables, scan, result, sums[result.name], molecule.multiplicity)
             tables["failures"] += rows.failure_rows(result, suggest or _no_remedy)
             tables["crossings"] += rows.crossing_rows(result, crossings or {})
     frames = {name: frame(name, content) for name, content in tables.items()}
     made = provenance(campaign, facts or {}, sources)
     return Analysis(campaign, frames, coordinates, made, sources.mixed())
+
+
+def _add_limits(
+    tables: dict[str, list[dict[str, Any]]],
+    scan: str,
+    result: LevelResult,
+    sums: limits.Sums,
+    multiplicity: int,
+) -> None:
+    """Add the far limit, D_e against the fragments and the picture of the bond."""
+    depth = limits.depth_against_fragments(result)
+    limit = limits.far_limit(result, sums, (multiplicity - 1) / 2)
+    tables["limits"].append(limits.limit_row(scan, result.name, limit, depth[0]))
+    tables["fits"].append(limits.depth_row(scan, result.name, depth))
+    tables["bond_picture"] += rows.bond_rows(result)
 
 
 def _no_remedy(_record: Record) -> str:

@@ -11,10 +11,14 @@ from scission.analysis.scan import LevelResult
 from scission.curves import ModelFit
 from scission.diagnostics import DIAGNOSTICS
 from scission.records import Planned, Record, settled_scalars
+from scission.records.schema import SCALARS
 from scission.thresholds import Thresholds, is_over, threshold_for
 from scission.units import DALTON_IN_ELECTRON_MASS, HARTREE_IN_EV
 
 Row = dict[str, Any]
+
+BOND_PICTURE = tuple(f.name for f in SCALARS if f.name.startswith(("bond_", "vb_")))
+"""Scalars of a record that say what the bond is made of."""
 
 
 def where(point: Planned) -> Row:
@@ -172,6 +176,21 @@ def state_rows(result: LevelResult) -> Iterator[Row]:
         labels = record.arrays.get("state_labels", np.arange(1, len(energies) + 1))
         for state, (label, energy) in enumerate(zip(labels, energies, strict=True), start=1):
             yield where(point) | {"state": state, "label": int(label), "energy_hartree": float(energy)}
+
+
+def bond_rows(result: LevelResult) -> Iterator[Row]:
+    """One row for each number of the bond picture of each point.
+
+    ``transfer_k`` is the weight of configurations with k active electrons on the first fragment.
+    """
+    for point, record in zip(result.points, result.records, strict=True):
+        if record.status != "converged":
+            continue
+        numbers = {name: record.scalars[name] for name in BOND_PICTURE if name in record.scalars}
+        weights = record.arrays.get("transfer_weights", np.empty(0))
+        numbers |= {f"transfer_{k}": float(w) for k, w in enumerate(weights)}
+        for name, value in numbers.items():
+            yield where(point) | {"quantity": name, "value": value, "unit": "1"}
 
 
 def failure_rows(result: LevelResult, suggest: Callable[[Record], str]) -> Iterator[Row]:

@@ -31,7 +31,10 @@ class Bond:
 
 @dataclass
 class LevelResult:
-    """One level of a scan: its points in the order of the scan, and what was concluded from them."""
+    """One level of a scan: its points in the order of the scan, and what was concluded from them.
+
+    ``fragment_sum`` is the lowest energy of the separate fragments, hartree; NaN for unknown.
+    """
 
     name: str
     level: Level
@@ -40,6 +43,7 @@ class LevelResult:
     flags: list[Flag] = field(default_factory=list)
     onsets: dict[str, list[Onset]] = field(default_factory=dict)
     fits: FitReport | None = None
+    fragment_sum: float = float("nan")
 
     @property
     def coordinate(self) -> np.ndarray:
@@ -144,6 +148,7 @@ def _curve(result: LevelResult, bond: Bond) -> Curve:
         why_not=why_not,
         reduced_mass=bond.reduced_mass,
         diatomic=bond.diatomic,
+        fragment_limit=result.fragment_sum if np.isfinite(result.fragment_sum) else None,
     )
 
 

@@ -19,12 +19,12 @@ from .casscf import MAX_MACRO_CYCLES, casci_object, finish_casscf
 from .correlate import METHODS
 from .molecule import build_mole, root_overlap
 from .recording import Stopwatch, inputs_of, provenance, record_of
-from .reference import solve_reference
+from .reference import UNRESTRICTED, solve_reference
 from .solutions import solution_of_field
 
 Array = NDArray[np.float64]
 
-_STARTS: list[dict[str, Any]] = [{"engine": "minao"}, {"engine": "atom"}, {"broken": True}]
+_STARTS: list[dict[str, Any]] = [{"engine": "minao"}, {"engine": "atom"}]
 _LADDER = ("", "level-shift", "damping", "second-order")
 _ROOM = 1e-6
 """By how much (hartree) an active space may lie above the determinant within it before it counts as wrong."""
@@ -103,11 +103,12 @@ def _first_good(keys: list[str], store: Store) -> Record:
 def _determinant(task: dict[str, Any], spec: dict[str, Any], store: Store) -> Any:
     """Return the lowest converged field of a determinant reference, from several starts and remedies."""
     field = None
+    starts = _STARTS + ([{"broken": True}] if spec["reference"] in UNRESTRICTED else [])
     for remedy in _LADDER:
         helper = {
             **task,
             "spec": spec,
-            "starts": _STARTS,
+            "starts": starts,
             "choose": "lowest",
             "stability": True,
             "remedy": remedy,
@@ -133,7 +134,7 @@ def _on_determinant(
     if method == "none" or not field.converged or not _correlates(mole, frozen):
         return solution
     reference = record_of(solution, "fragment", task, watch, diagnose=False)
-    correlated = METHODS[method](task, field, reference, frozen, store)
+    correlated = METHODS[method]({**task, "fragments": []}, field, reference, frozen, store)
     correlated.correlation = method
     return correlated
 
@@ -160,7 +161,7 @@ def _active_level(
     record = _optimised(task, mole, share, sizes, field, single)
     if record.status != "converged" or task["correlation"] == "none" or not _correlates(mole, 0):
         return _as_solution(task, record)
-    solution = METHODS["NEVPT2"](task, field, record, 0, store)
+    solution = METHODS["NEVPT2"]({**task, "fragments": []}, field, record, 0, store)
     solution.correlation = "NEVPT2"
     return solution
 

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Mapping
+from typing import Any
 
 import pandas as pd
 
@@ -19,8 +20,9 @@ CAUTION = (
 )
 
 
-def counts(points: pd.DataFrame) -> pd.DataFrame:
-    """One row a scan and level: points, results, failures, and how many points have each flag."""
+def counts(points: pd.DataFrame, limits: pd.DataFrame | None = None) -> pd.DataFrame:
+    """One row a scan and level: points, results, failures, how many points have each flag, the far limit."""
+    ends = {} if limits is None else {(r.scan, r.level): far_words(r) for r in limits.itertuples()}
     rows = []
     for (scan, level), part in points.groupby(["scan", "level"], sort=False):
         good = int((part.status == "converged").sum())
@@ -31,8 +33,30 @@ def counts(points: pd.DataFrame) -> pd.DataFrame:
             "results": good,
             "no result": len(part) - good,
         }
-        rows.append(row | {flag: int((part.flag == flag).sum()) for flag in FLAGS})
+        row |= {flag: int((part.flag == flag).sum()) for flag in FLAGS}
+        rows.append(row | ({"far limit": ends.get((scan, level), "")} if limits is not None else {}))
     return pd.DataFrame(rows)
+
+
+def far_words(limit: Any) -> str:
+    """A row of the table ``limits`` in a few words: where the level goes, and how far off it ends."""
+    if limit.limit in ("unknown", "not separated"):
+        return str(limit.limit)
+    return f"{limit.limit} {round(limit.difference_kcal_per_mol, 1) + 0.0:+.1f} kcal/mol"
+
+
+def far_limits(limits: pd.DataFrame) -> pd.DataFrame:
+    """One row a scan and level: where the broken bond leaves it, against the separate fragments."""
+    names = {
+        "scan": "scan",
+        "level": "level",
+        "d_e_ev": "D_e to fragments / eV",
+        "coordinate_angstrom": "far end / angstrom",
+        "difference_kcal_per_mol": "difference / (kcal/mol)",
+        "limit": "limit",
+        "what": "in words",
+    }
+    return limits[list(names)].rename(columns=names)
 
 
 def best_constants(frames: Mapping[str, pd.DataFrame]) -> pd.DataFrame:

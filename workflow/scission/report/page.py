@@ -12,7 +12,7 @@ from scission.analysis import Analysis
 from scission.records.atomic import write_whole
 from scission.report.canvas import save
 from scission.report.figure import draw_scan
-from scission.report.overview import CAUTION, best_constants, counts, failure_counts
+from scission.report.overview import CAUTION, best_constants, counts, failure_counts, far_limits
 
 _STYLE = """
 body { font: 15px/1.5 "DejaVu Sans", Verdana, sans-serif; color: #222; background: #fff;
@@ -62,11 +62,13 @@ def page_html(analysis: Analysis, pictures: dict[str, Path]) -> str:
         _opening(analysis),
         f'<p class="caution">{escape(CAUTION)}</p>',
         "<h2>Points and flags</h2>",
-        html_table(counts(frames["points"])),
+        html_table(counts(frames["points"], frames["limits"])),
         "<h2>Scans</h2>",
         *(_figure(scan, path) for scan, path in pictures.items()),
         "<h2>Fits</h2>",
         _fits(frames),
+        "<h2>Far limits</h2>",
+        _limits(frames["limits"]),
         "<h2>Points without a result</h2>",
         _failures(frames["failures"], analysis.campaign.name),
         "<h2>Active spaces and other remarks</h2>",
@@ -125,6 +127,14 @@ def _fits(frames: dict[str, pd.DataFrame]) -> str:
         "points: tables/fits.csv, models.csv, residuals.csv."
     )
     return html_table(best_constants(frames)) + f'<p class="small">{words}</p>'
+
+
+def _limits(limits: pd.DataFrame) -> str:
+    words = (
+        "The fragments are computed by themselves at each level, in the geometry of the scan, in the spins "
+        "that couple to the molecule's. Ionic sums, and fragments without an energy: tables/limits.csv."
+    )
+    return html_table(far_limits(limits)) + f'<p class="small">{words}</p>'
 
 
 def _failures(failures: pd.DataFrame, campaign: str) -> str:

@@ -24,7 +24,7 @@ def summary_text(analysis: Analysis, folder: Path | None = None) -> str:
     good = len(points) - len(failures)
     parts = [
         f"{analysis.campaign.name}: {len(points)} points, {good} with a result, {len(failures)} without",
-        "Points and flags\n" + text_table(counts(points)),
+        "Points and flags\n" + text_table(counts(points, analysis.frames["limits"])),
         "Fits (standard error in the last digits)\n" + text_table(_fits(analysis)),
     ]
     if len(failures):
