@@ -19,6 +19,7 @@ from .fragments import fragment_densities
 from .molecule import build_mole, root_overlap
 from .reference import candidates
 from .solutions import dipole_moment, take_facts
+from .symmetry import pure_orbitals, symmetric_mole
 
 Array = NDArray[np.float64]
 
@@ -140,25 +141,48 @@ def _neutral_density(task: dict[str, Any]) -> Array | None:
     return next((density.sum(axis=0) for _, density in found), None)
 
 
-def _optimise(task: dict[str, Any], mole: gto.Mole, coeff: Array, ci: Any, sizes: Array, notes: dict[str, str]) -> Solution:
+def _optimise(
+    task: dict[str, Any], mole: gto.Mole, coeff: Array, vectors: list[Array] | None, sizes: Array, notes: dict[str, str]
+) -> Solution:
     """Optimise orbitals and CI vectors; where the first-order steps do not converge, the second-order solver."""
     spec = task["spec"]
-    mc = casci_object(mole, spec, sizes, orbital_step=True)
-    guess = ci if ci is None or spec.get("states", 1) > 1 else ci[0]
+    averaged = spec.get("states", 1) > 1
+    working, coeff, vectors = _with_symmetry(mole, coeff, vectors, sizes)
+    guess = vectors if vectors is None or averaged else vectors[0]
+    mc = casci_object(working, spec, sizes, orbital_step=True)
     if task.get("remedy") != "second-order":
         mc.kernel(coeff, ci0=guess)
         coeff, guess = mc.mo_coeff, mc.ci
     if not mc.converged:
         mc = mcscf.newton(casci_object(mole, spec, sizes, orbital_step=True))
         mc.max_cycle_macro = MAX_MACRO_CYCLES
-        mc.kernel(coeff, ci0=guess)
-    vectors = list(mc.ci) if spec.get("states", 1) > 1 else [mc.ci]
-    energies = np.atleast_1d(mc.e_states if spec.get("states", 1) > 1 else mc.e_tot)
-    solution = _solution(task, mole, mc, mc.mo_coeff, vectors, energies, False)
+        mc.kernel(np.asarray(coeff), ci0=guess)
+    found = list(mc.ci) if averaged else [mc.ci]
+    energies = np.atleast_1d(mc.e_states if averaged else mc.e_tot)
+    solution = _solution(task, mole, mc, np.asarray(mc.mo_coeff), [np.asarray(v) for v in found], energies, False)
     solution.converged = bool(mc.converged)
     solution.notes = notes
     solution.extra["active"] = sizes
     return solution
+
+
+def _with_symmetry(
+    mole: gto.Mole, coeff: Array, vectors: list[Array] | None, sizes: Array
+) -> tuple[gto.Mole, Array, list[Array] | None]:
+    """Return molecule, orbitals and CI vectors with the point group put to use, where the orbitals have it."""
+    symmetric = symmetric_mole(mole)
+    n_core, n_active, n_electrons = (int(n) for n in sizes)
+    root, inverse_root = root_overlap(mole)
+    x = root @ coeff
+    pure = pure_orbitals(symmetric, x, (n_core, n_core + n_active)) if symmetric is not None else None
+    if symmetric is None or pure is None:
+        return mole, coeff, vectors
+    turned, rotation = pure
+    if vectors is not None:
+        n_beta = (n_electrons - mole.spin) // 2
+        electrons = (n_electrons - n_beta, n_beta)
+        vectors = [fci.addons.transform_ci(v, electrons, rotation) for v in vectors]
+    return symmetric, inverse_root @ turned, vectors
 
 
 def _solution(
