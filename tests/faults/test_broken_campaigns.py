@@ -36,7 +36,7 @@ BROKEN: list[tuple[list[tuple[str, Any]], str, Any, str]] = [
     ([(f"{OH}/stretch/atoms", 1)], "scans.one-oh.stretch.atoms", "atoms", "is not a key here (bond, lengths, move)"),
     ([(f"{LENGTHS}/step", 1)], "scans.one-oh.stretch.lengths.step", "step", "(from, to, points, spacing)"),
     ([(f"{CAS}/active_space/core", 1)], "levels.cas.active_space.core", "core", "(electrons, orbitals, atomic"),
-    ([("diagnostics/limits", {})], "diagnostics.limits", "limits", "is not a key here (thresholds, include)"),
+    ([("diagnostics/cutoffs", {})], "diagnostics.cutoffs", "cutoffs", "is not a key here (thresholds, weights, limits, include)"),
     ([("fit/order", 2)], "fit.order", "order", "is not a key here (models)"),
     # missing keys
     ([("campaign", DELETE)], "campaign", MISSING, "is missing"),

@@ -4,7 +4,8 @@ import math
 
 import numpy as np
 import pytest
-from scission.thresholds import THRESHOLDS, Override, limit, resolve
+from scission.thresholds import THRESHOLDS, Override, limit, resolve, threshold_for
+from scission.thresholds.rule import RULE, changed
 from scission.verdict import FAMILIES, Context, judge, onsets
 
 GOOD = {"t1": 0.006, "d1": 0.012, "d2": 0.12, "largest_t2": 0.05, "triplet_stability": 0.3, "luno": 0.02}
@@ -26,41 +27,95 @@ def test_nothing_known_is_undetermined():
 @pytest.mark.parametrize(
     ("changes", "label"),
     [
-        ({"t1": 0.03}, "borderline"),
-        ({"t1": 0.05, "d1": 0.2}, "borderline"),
-        ({"d2": 0.20}, "borderline"),
-        ({"d2": 0.20, "largest_t2": 0.15}, "borderline"),
-        ({"d2": 0.20, "triplet_stability": -0.01}, "multireference"),
-        ({"luno": 0.23}, "multireference"),
-        ({"triplet_stability": -0.01, "uhf_hono": 1.9, "uhf_luno": 0.15}, "borderline"),
+        ({"t1": 0.03}, "single-reference"),
+        ({"t1": 0.05, "d1": 0.2}, "single-reference"),
+        ({"d2": 0.20}, "single-reference"),
+        ({"d2": 0.31, "largest_t2": 0.21}, "borderline"),
+        ({"d2": 0.20, "triplet_stability": -0.01}, "borderline"),
+        ({"luno": 0.23}, "borderline"),
+        ({"luno": 0.23, "d2": 0.31, "triplet_stability": -0.2}, "multireference"),
     ],
 )
-def test_the_rule_counts_families_once_and_erratic_ones_half(changes, label):
-    """One sign is borderline, two independent or a strong one multireference; T1 and D1 alone never."""
+def test_the_label_is_the_nearest_whole_mean_grade(changes, label):
+    """One sign among many that are within is little; signs that agree and are strong are multireference."""
     assert judge(GOOD | changes, THRESHOLDS).label == label
 
 
-def test_reasons_hold_the_numbers():
-    """A reason reads name, value, sign, threshold."""
-    assert judge({"luno": 0.13}, THRESHOLDS).reasons == ["LUNO 0.13 > 0.10"]
+def test_an_unstable_determinant_alone_is_at_most_borderline():
+    """However negative: coupled cluster on an unstable determinant may still be sound."""
+    flag = judge({"triplet_stability": -0.5}, THRESHOLDS)
+
+    assert flag.label == "borderline"
+    assert any("no more than borderline" in reason for reason in flag.reasons)
+
+
+def test_the_mean_grade_is_the_one_of_the_documented_rule():
+    """Two families: D2 half way to strong, T1 (weight 1/2) within: (1 * 1.5 + 0.5 * 0) / 1.5."""
+    flag = judge({"d2": 0.24, "t1": 0.005}, THRESHOLDS)
+
+    assert flag.grade == pytest.approx(1.0)
+
+
+def test_a_family_is_counted_once():
+    """HONO and LUNO mirror each other: together they say no more than one of them."""
+    one = judge({"luno": 0.15, "d2": 0.1}, THRESHOLDS).grade
+
+    assert judge({"luno": 0.15, "hono": 1.85, "d2": 0.1}, THRESHOLDS).grade == pytest.approx(one)
+
+
+def test_grades_rise_straight_between_near_threshold_and_strong():
+    """0 up to near, 1 at the threshold, 2 from strong on; below zero for those that fall."""
+    luno, stability = THRESHOLDS["luno"][0], THRESHOLDS["triplet_stability"][0]
+
+    assert [luno.grade(x, 1) for x in (0.05, 0.08, 0.09, 0.1, 0.15, 0.2, 0.9)] == pytest.approx(
+        [0, 0, 0.5, 1, 1.5, 2, 2]
+    )
+    assert [stability.grade(x, 1) for x in (0.2, 0.03, 0.0, -0.05, -0.3)] == pytest.approx([0, 0, 1, 1.5, 2])
+
+
+def test_reasons_hold_the_numbers_and_the_level():
+    """A reason reads name, value, sign, threshold, level; near ones say that they are near."""
+    flag = judge({"luno": 0.13, "d2": 0.17}, THRESHOLDS, Context(level="cas"))
+
+    assert flag.reasons[:2] == ["LUNO 0.13 > 0.10 (level cas)", "D2 0.17 near 0.18 (level cas)"]
 
 
 def test_evidence_of_another_level_counts_and_is_named():
     """A value borrowed from another level of the scan decides, and the reason says whose it is."""
-    flag = judge({"t1": 0.01}, THRESHOLDS, Context(evidence={"luno": (0.31, "cas")}))
+    flag = judge({"t1": 0.05}, THRESHOLDS, Context(evidence={"luno": (0.31, "cas")}, level="cc"))
 
     assert flag.label == "multireference"
-    assert flag.reasons == ["LUNO 0.31 > 0.20 (strong) (level cas)"]
+    assert flag.reasons[0] == "LUNO 0.31 > 0.10 (strong, level cas)"
+
+
+def test_little_knowledge_is_undetermined():
+    """T1 alone weighs too little to call a point single-reference or not."""
+    assert judge({"t1": 0.005}, THRESHOLDS).label == "undetermined"
+
+
+def test_weights_and_limits_can_be_changed():
+    """A diagnostic without weight is left out; other limits move the label, not the grade."""
+    values = GOOD | {"d2": 0.31}
+    quiet = changed(RULE, {"d2": 0.0, "largest_t2": 0.0}, None, "test")
+    strict = changed(RULE, {}, (0.1, 0.3), "test")
+
+    assert judge(values, THRESHOLDS, rule=quiet).label == "single-reference"
+    assert judge(values, THRESHOLDS, rule=strict).label == "multireference"
+    with pytest.raises(ValueError, match="in no family"):
+        changed(RULE, {"dipole": 1.0}, None, "test")
 
 
 def test_own_value_goes_before_evidence():
     """A point's own T1 is not replaced by another level's."""
-    assert judge({"t1": 0.01}, THRESHOLDS, Context(evidence={"t1": (0.5, "b")})).label == "single-reference"
+    values = {"t1": 0.01, "d2": 0.1}
+
+    assert judge(values, THRESHOLDS, Context(evidence={"t1": (0.5, "b")})).label == "single-reference"
 
 
 def test_thresholds_depend_on_the_spin():
     """T1 0.03 is over for a singlet and not for a triplet; the excess of <S^2> scales with S(S+1)."""
-    assert judge({"t1": 0.03}, THRESHOLDS, Context(multiplicity=3)).label == "single-reference"
+    assert THRESHOLDS["t1"][0].grade(0.03, 1) > 1.0
+    assert threshold_for("t1", 3).grade(0.03, 3) == 0.0
     assert limit("s2_excess", 1) == 0.1
     assert limit("s2_excess", 3) == pytest.approx(0.2)
     assert math.isnan(limit("homo_lumo_gap", 1))
@@ -83,9 +138,11 @@ def test_override_moves_the_flag_and_needs_a_source():
     """A campaign's own threshold is used with its source; without one it is refused."""
     resolved = resolve({"t1": Override(0.001, "test of this campaign")})
 
-    assert judge({"t1": 0.006}, resolved).label == "borderline"
-    with pytest.raises(ValueError, match=r"thresholds\.t1\.source.*\n.*thresholds\.t9: "):
-        resolve({"t1": Override(0.03, " "), "t9": Override(1.0, "x")})
+    values = {"t1": 0.006, "d2": 0.1}
+
+    assert judge(values, resolved).grade > judge(values, THRESHOLDS).grade
+    with pytest.raises(ValueError, match=r"thresholds\.t1\.source.*\n.*thresholds\.n_u\.direction: "):
+        resolve({"t1": Override(0.03, " "), "n_u": Override(1.0, "x")})
 
 
 def test_onset_is_the_root_between_its_bracket():
@@ -125,6 +182,20 @@ def test_over_from_the_start_has_no_place():
     assert math.isnan(onset.onset)
     assert onset.upper == 1.0
     assert "from the first known point" in onset.note
+
+
+def test_a_kink_is_where_the_interpolation_begins():
+    """An unrestricted determinant leaves its resting value with a slope: the crossing is found beyond the kink.
+
+    Occupation 1 - sqrt(1 - d), d = 1.5 (x - 1.2) beyond 1.2, reaches 0.1 at 1.2 + 0.19 / 1.5 in closed form.
+    """
+    x = np.linspace(0.8, 1.8, 11)
+    broken = np.clip(1.5 * (x - 1.2), 0.0, 0.999)
+    (onset,) = onsets(x, 1.0 - np.sqrt(1.0 - broken), 0.1, "above")
+    (known,) = onsets(x, 1.0 - np.sqrt(1.0 - broken), 0.1, "above", break_at=1.2)
+
+    assert onset.onset == pytest.approx(1.2 + 0.19 / 1.5, abs=0.01)
+    assert known.onset == pytest.approx(1.2 + 0.19 / 1.5, abs=0.002)
 
 
 def test_order_of_points_does_not_matter():

@@ -3,19 +3,17 @@
 ``load_campaign`` gives a ``Campaign`` or raises ``CampaignError`` with every problem of the file.
 """
 
+from scission.campaign.conclusions import Diagnostics, Fit, Threshold
 from scission.campaign.electrons import Counts, count
 from scission.campaign.load import load_campaign
 from scission.campaign.model import (
     ActiveSpace,
     Campaign,
-    Diagnostics,
-    Fit,
     Grid,
     Level,
     Molecule,
     Scan,
     Stretch,
-    Threshold,
 )
 from scission.campaign.names import AtomBasis, basis_on
 from scission.campaign.problems import CampaignError, Problem

@@ -3,9 +3,13 @@
 import re
 from collections.abc import Collection
 
+from scission.campaign.conclusions import Diagnostics, Threshold
 from scission.campaign.fields import LONGEST_NAME, NAME_PATTERN
 from scission.campaign.parts import Parts
-from scission.campaign.problems import Problem, one_of
+from scission.campaign.problems import MISSING, Problem, one_of
+from scission.diagnostics import DIAGNOSTICS
+from scission.thresholds import THRESHOLDS, is_over
+from scission.thresholds.rule import RULE
 
 _SAFE = re.compile(NAME_PATTERN)
 # Names that Windows keeps for devices, whatever follows the first dot: results are copied there too.
@@ -73,13 +77,52 @@ def check_analysis(parts: Parts, diagnostic_names: Collection[str]) -> list[Prob
     for name, threshold in diagnostics.thresholds.items():
         path = f"diagnostics.thresholds.{name}"
         problems += _unknown_diagnostic(name, path, diagnostic_names)
+        problems += _direction(name, threshold, path)
         if not threshold.source.strip():
             rule = "is no source: say where the value comes from"
             problems.append(Problem(f"{path}.source", threshold.source, rule))
+    problems += _weights(diagnostics)
     for place, name in enumerate(diagnostics.include):
         problems += _unknown_diagnostic(name, f"diagnostics.include[{place}]", diagnostic_names)
     problems += _repeated(diagnostics.include, "diagnostics.include")
     return problems + _repeated(list(parts.fit.models), "fit.models")
+
+
+def _weights(diagnostics: Diagnostics) -> list[Problem]:
+    """Weights of diagnostics that the rule knows, limits that rise, each with a source."""
+    problems = []
+    for name, weight in diagnostics.weights.items():
+        path = f"diagnostics.weights.{name}"
+        if name not in RULE.weights:
+            rule = f"is not a diagnostic that the rule of the flags weighs {one_of(RULE.weights)}"
+            problems.append(Problem(path, name, rule))
+        if not weight.source.strip():
+            problems.append(
+                Problem(f"{path}.source", weight.source, "is no source: say where the weight comes from")
+            )
+    limits = diagnostics.limits
+    if limits is not None and limits.borderline >= limits.multireference:
+        rule = f"must lie below multireference ({limits.multireference:g})"
+        problems.append(Problem("diagnostics.limits.borderline", limits.borderline, rule))
+    return problems
+
+
+def _direction(name: str, threshold: Threshold, path: str) -> list[Problem]:
+    """A diagnostic without a threshold needs the side that is over, the others must not turn theirs."""
+    if name not in DIAGNOSTICS:
+        return []
+    own = THRESHOLDS[name][0].direction if name in THRESHOLDS else None
+    if own is None and threshold.direction is None:
+        return [
+            Problem(f"{path}.direction", MISSING, "is missing: the diagnostic has no threshold of its own")
+        ]
+    if own is not None and threshold.direction not in (None, own):
+        return [Problem(f"{path}.direction", threshold.direction, f"must be {own}, as the diagnostic has it")]
+    strong = threshold.strong
+    side = own or threshold.direction
+    if strong is not None and side is not None and not is_over(strong, threshold.value, side):
+        return [Problem(f"{path}.strong", strong, f"must lie {side} value ({threshold.value:g})")]
+    return []
 
 
 def _unknown_diagnostic(name: str, path: str, known: Collection[str]) -> list[Problem]:

@@ -2,7 +2,7 @@
 
 from typing import Any
 
-from pydantic import BaseModel
+from pydantic import BaseModel, ConfigDict
 
 NAME_PATTERN = r"^[A-Za-z0-9_][A-Za-z0-9._-]*$"
 LONGEST_NAME = 64
@@ -48,3 +48,9 @@ def kind_of(value: Any) -> str:
     """Tag of a value that may be a mapping, a list or a text; tags are dropped from error paths."""
     kinds = {dict: "<map>", list: "<list>", tuple: "<list>", str: "<text>", type(None): "<null>"}
     return kinds.get(type(value), "<map>" if isinstance(value, BaseModel) else "<other>")
+
+
+class Strict(BaseModel):
+    """No unknown keys, no guessing of types, no infinite numbers."""
+
+    model_config = ConfigDict(extra="forbid", strict=True, frozen=True, allow_inf_nan=False)

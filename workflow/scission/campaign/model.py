@@ -9,14 +9,15 @@ from typing import Annotated, Literal
 
 import numpy as np
 from numpy.typing import NDArray
-from pydantic import BaseModel, BeforeValidator, ConfigDict, Discriminator, Field, PrivateAttr, Tag
+from pydantic import BeforeValidator, Discriminator, Field, PrivateAttr, Tag
 
+from scission.campaign.conclusions import Comparison, Diagnostics, Fit
 from scission.campaign.fields import (
     NAME,
     NAMES,
+    Strict,
     as_tuple,
     kind_of,
-    map_or_null,
     null_is_empty,
     null_is_none,
     or_null,
@@ -25,22 +26,12 @@ from scission.campaign.fields import (
 from scission.campaign.problems import CampaignError
 from scission.campaign.xyz import parse_atoms
 
-Reference = Literal["RHF", "UHF", "ROHF", "RKS", "UKS", "CASSCF"]
+Reference = Literal["RHF", "UHF", "ROHF", "RKS", "UKS", "CASSCF", "PAIR", "ORBITAL", "PAIR+IONIC"]
+PICTURES = ("PAIR", "ORBITAL", "PAIR+IONIC")
+"""References that are pictures of a two-electron bond over the orbitals of its free atoms."""
 Correlation = Literal["none", "MP2", "CCSD", "CCSD(T)", "FCI", "NEVPT2"]
-Model = Literal["morse", "extended-rydberg"]
-
-
-def _all_models() -> list[Model]:
-    return ["morse", "extended-rydberg"]
-
 
 AtomPair = Annotated[tuple[str, str], BeforeValidator(as_tuple)]
-
-
-class Strict(BaseModel):
-    """No unknown keys, no guessing of types, no infinite numbers."""
-
-    model_config = ConfigDict(extra="forbid", strict=True, frozen=True, allow_inf_nan=False)
 
 
 class Molecule(Strict):
@@ -111,7 +102,8 @@ class Level(Strict):
     """A level of theory: reference, correlation method and basis."""
 
     reference: Reference = Field(
-        description="Reference wavefunction or Kohn-Sham determinant.", examples=["RHF"]
+        description="Reference wavefunction or Kohn-Sham determinant; PAIR, ORBITAL and PAIR+IONIC: pictures of a two-electron bond.",
+        examples=["RHF"],
     )
     functional: str | None = Field(
         None, description="Density functional, for RKS and UKS only.", examples=["B3LYP", "PBE0", "PBE,PBE"]
@@ -156,7 +148,9 @@ class Level(Strict):
 
     @property
     def resolved_follow(self) -> Literal["anchor", "lowest"]:
-        """``follow``, or the default of the reference."""
+        """``follow``, or the default of the reference; the pictures of the bond have one state only."""
+        if self.reference in PICTURES:
+            return "anchor"
         return self.follow or ("lowest" if self.reference in ("UHF", "UKS") else "anchor")
 
     @property
@@ -218,43 +212,6 @@ class Scan(Strict):
     stretch: Stretch | None = Field(None, description="The coordinate: a bond that is stretched.")
 
 
-class Threshold(Strict):
-    """A threshold of your own for one diagnostic."""
-
-    value: float = Field(description="Value at which the diagnostic counts as over.", examples=[0.02])
-    source: str = Field(
-        min_length=1,
-        description="Where the value comes from: a publication or your own study.",
-        examples=["..."],
-    )
-
-
-class Diagnostics(Strict):
-    """Overrides of thresholds, and diagnostics beyond the standard ones."""
-
-    thresholds: Annotated[dict[str, Threshold], BeforeValidator(null_is_empty)] = Field(
-        default_factory=dict,
-        description="Diagnostic name: {value, source}; the source is required.",
-        json_schema_extra=map_or_null,
-    )
-    include: list[str] = Field(
-        default_factory=list,
-        description="Further diagnostics to compute, by name; some cost extra time.",
-        json_schema_extra={"default": []},
-    )
-
-
-class Fit(Strict):
-    """How curves are fitted."""
-
-    models: list[Model] = Field(
-        default_factory=_all_models,
-        min_length=1,
-        description="Curve models to fit and to choose from.",
-        json_schema_extra={"default": ["morse", "extended-rydberg"]},
-    )
-
-
 class Campaign(Strict):
     """A campaign of bond scans: molecules, levels of theory, and the scans that combine them."""
 
@@ -273,7 +230,7 @@ class Campaign(Strict):
     scans: dict[str, Scan] = Field(min_length=1, description="Scans by name.", json_schema_extra=NAMES)
     diagnostics: Annotated[Diagnostics, BeforeValidator(null_is_empty)] = Field(
         default_factory=Diagnostics,
-        description="Overrides of thresholds, each with a source.",
+        description="Thresholds and the rule of the flags, each change with a source; costly diagnostics.",
         json_schema_extra=ref_or_null,
     )
     fit: Annotated[Fit, BeforeValidator(null_is_empty)] = Field(
@@ -281,6 +238,11 @@ class Campaign(Strict):
     )
     reference_level: str | None = Field(
         None, description="The level the others are compared with.", examples=["fci"]
+    )
+    comparison: Annotated[Comparison, BeforeValidator(null_is_empty)] = Field(
+        default_factory=Comparison,
+        description="How levels are compared with the reference level.",
+        json_schema_extra=ref_or_null,
     )
     _source_text: str = PrivateAttr(default="")
     _directory: Path = PrivateAttr(default_factory=Path)

@@ -7,7 +7,8 @@ from typing import Any, TypeVar
 
 from pydantic import BaseModel, ValidationError
 
-from scission.campaign.model import Campaign, Diagnostics, Fit, Level, Molecule, Scan
+from scission.campaign.conclusions import Diagnostics, Fit
+from scission.campaign.model import Campaign, Level, Molecule, Scan
 from scission.campaign.problems import Problem
 from scission.campaign.translate import problems_of
 

@@ -8,7 +8,7 @@ Contract for a new member
    solution it is given: it never returns zero for "unknown" and never raises for a valid solution.
 2. Add a :class:`Diagnostic` to ``DIAGNOSTICS`` below.  The key is the name used in records and tables.
 3. If it has a published threshold, add it to :mod:`scission.thresholds`, with its source, and say in
-   :mod:`scission.verdict.rule` what it weighs.
+   :mod:`scission.thresholds.rule` what it weighs.
 4. If it needs a calculation of its own, name that in ``calculation``, enter it in ``CALCULATIONS`` with its
    price, and write it in :mod:`scission.chemistry.extras`.
 

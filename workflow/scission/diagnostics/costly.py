@@ -55,14 +55,14 @@ def b1(solution: Solution) -> float | Absent:
 def cc_hono(solution: Solution) -> float | Absent:
     """Occupation of the last strongly occupied natural orbital of the CCSD density, electrons.
 
-    From the unrelaxed density with lambda amplitudes (n_mo,), closed shells.  Meaningless where CCSD has failed:
-    the density of an expansion that diverges has occupations below 0 or above 2.  Loewdin (1955).
+    From the unrelaxed density with lambda amplitudes (n_mo,), closed shells.  Meaningless where CCSD has
+    failed: the density of an expansion that diverges has occupations below 0 or above 2.  Loewdin (1955).
     """
     return _cc_frontier(solution, occupied=True)
 
 
 def cc_luno(solution: Solution) -> float | Absent:
-    """Occupation of the first weakly occupied natural orbital of the CCSD density, electrons; as ``cc_hono``."""
+    """Occupation of the first weakly occupied natural orbital of the CCSD density, electrons."""
     return _cc_frontier(solution, occupied=False)
 
 

@@ -272,5 +272,5 @@ CALCULATIONS: dict[str, Calculation] = {
     "n_fod": Calculation("n_fod", 2.0, False, "fractionally occupied TPSS determinant at 5000 K"),
     "b1": Calculation("b1", 6.0, False, "BLYP and B1LYP energies of the molecule and of its fragments"),
 }
-"""Prices: RHF, CCSD and (T) together are 1; density-functional calculations cost 0.6 to 3.4 each (own measurement
-on molecules of 30 to 60 basis functions, where they weigh most)."""
+"""Prices: RHF, CCSD and (T) together are 1; density-functional calculations cost 0.6 to 3.4 each (own
+measurement on molecules of 30 to 60 basis functions, where they weigh most)."""

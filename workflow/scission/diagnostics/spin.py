@@ -17,7 +17,12 @@ def s2(solution: Solution) -> float | Absent:
 
 
 def s2_excess(solution: Solution) -> float | Absent:
-    """<S^2> - S(S+1) with S of the state that was asked for, dimensionless."""
+    """<S^2> - S(S+1) with S of the state that was asked for, dimensionless.
+
+    Of unrestricted determinants; every other wavefunction here has its spin by its form.
+    """
+    if solution.reference not in ("UHF", "UKS") or solution.correlation == "FCI":
+        return Absent("the wavefunction has the spin asked for by its form")
     return _UNKNOWN if solution.s2 is None else solution.s2 - solution.spin * (solution.spin + 1.0)
 
 

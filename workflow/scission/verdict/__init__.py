@@ -1,6 +1,25 @@
-"""Verdicts on points: flags with reasons in words, and the lengths where diagnostics cross."""
+"""Verdicts: flags with reasons in words, onsets of diagnostics, levels compared, diagnostics scored."""
 
-from scission.verdict.flags import FAMILIES, Context, Flag, judge
+from scission.thresholds.rule import FAMILIES, RULE, Rule
+from scission.verdict.comparison import Comparison, Edge, compare
+from scission.verdict.flags import Context, Flag, Sign, judge
 from scission.verdict.onsets import Onset, onsets
+from scission.verdict.scorecard import Counts, Score, score
 
-__all__ = ["FAMILIES", "Context", "Flag", "Onset", "judge", "onsets"]
+__all__ = [
+    "FAMILIES",
+    "RULE",
+    "Comparison",
+    "Context",
+    "Counts",
+    "Edge",
+    "Flag",
+    "Onset",
+    "Rule",
+    "Score",
+    "Sign",
+    "compare",
+    "judge",
+    "onsets",
+    "score",
+]

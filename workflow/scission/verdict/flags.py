@@ -1,60 +1,24 @@
-"""The flag of a point: how far its diagnostics speak against a single reference.
+"""The flag of a point, with its reasons in words; the rule is in :mod:`scission.thresholds.rule`.
 
-The rule.  Diagnostics that see the same thing form a family and are counted once, by the
-strongest of them.  Over its threshold a diagnostic scores its weight, over its strong value
-twice that.  The ones that were found to agree along stretched bonds have weight 1 (triplet
-stability, CASSCF and UHF natural occupations, D2), the erratic ones 1/2 (T1, D1, largest T2,
-share of (T)).  With the sum over the families,
-
-    0 -> single-reference,   below 2 -> borderline,   2 and more -> multireference,
-
-so that it takes two independent signs or a strong one.  Nothing known -> undetermined.
 The flag speaks of the molecule at a geometry; whether a level can cope with it is another question:
 CASSCF and full CI can.
 """
+
+from __future__ import annotations
 
 from collections.abc import Mapping
 from dataclasses import dataclass, field
 from math import isfinite
 
-from scission.thresholds import Threshold, Thresholds, is_over, threshold_for
+from scission.thresholds import Thresholds, threshold_for
+from scission.thresholds.rule import CLEAR, FAMILIES, LABELS, NEVER_ALONE, RULE, Rule
 
 SINGLE = "single-reference"
 BORDERLINE = "borderline"
 MULTI = "multireference"
 UNDETERMINED = "undetermined"
 
-FULL, ERRATIC = 1.0, 0.5
-ENOUGH = 2.0
-
-FAMILIES: dict[str, dict[str, float]] = {
-    "symmetry breaking": {
-        "triplet_stability": FULL,
-        "uhf_luno": FULL,
-        "uhf_hono": FULL,
-        "s2_excess": ERRATIC,
-    },
-    "CASSCF wavefunction": {"luno": FULL, "hono": FULL, "c0_squared": FULL, "m_diagnostic": FULL},
-    "pair amplitudes": {"d2": FULL, "largest_t2": ERRATIC},
-    "single excitations": {"t1": ERRATIC, "d1": ERRATIC},
-    "triples": {"triples_share": ERRATIC},
-}
-
-LABELS = {
-    "t1": "T1",
-    "d1": "D1",
-    "d2": "D2",
-    "largest_t2": "largest T2",
-    "triples_share": "share of (T) in percent",
-    "s2_excess": "<S^2> excess",
-    "uhf_luno": "UHF LUNO",
-    "uhf_hono": "UHF HONO",
-    "luno": "LUNO",
-    "hono": "HONO",
-    "c0_squared": "C0^2",
-    "m_diagnostic": "M",
-    "triplet_stability": "triplet stability",
-}
+_ENOUGH_KNOWN = 1.0
 
 
 @dataclass(frozen=True)
@@ -62,71 +26,97 @@ class Context:
     """What a verdict knows besides the point's own values.
 
     ``evidence`` holds values of the same geometry from other levels of the scan, as
-    (value, name of the level); a point's own value of the same diagnostic goes first.
+    (value, name of the level); a point's own value of the same diagnostic goes first and is said to be of
+    ``level``.
     """
 
     multiplicity: int = 1
     evidence: Mapping[str, tuple[float, str]] = field(default_factory=dict)
+    level: str = ""
+
+
+@dataclass(frozen=True)
+class Sign:
+    """One graded diagnostic: its weight, its grade from 0 to 2, and the comparison in words."""
+
+    name: str
+    weight: float
+    grade: float
+    words: str
 
 
 @dataclass(frozen=True)
 class Flag:
-    """A label and the reasons for it in words, the weightiest first; ``score`` is the sum of the rule."""
+    """A label, the reasons for it in words, the weightiest first, and the mean grade (NaN for none)."""
 
     label: str
     reasons: list[str]
-    score: float = 0.0
+    grade: float = float("nan")
+    signs: tuple[Sign, ...] = ()
 
 
-def judge(values: Mapping[str, float], thresholds: Thresholds, context: Context | None = None) -> Flag:
+def judge(
+    values: Mapping[str, float], thresholds: Thresholds, context: Context | None = None, rule: Rule = RULE
+) -> Flag:
     """Judge one point; NaN values and diagnostics without a threshold or a family count as unknown."""
     context = context or Context()
     known = _known(values, context)
-    family_scores: list[float] = []
-    signs: list[tuple[float, str]] = []
-    checked: list[str] = []
-    for members in FAMILIES.values():
-        scores = [0.0]
-        for name, weight in members.items():
-            threshold = threshold_for(name, context.multiplicity, thresholds)
-            if name not in known or threshold is None:
-                continue
-            checked.append(LABELS[name])
-            grade, words = _grade(known[name], threshold, context.multiplicity)
-            scores.append(weight * grade)
-            signs += [(weight * grade, words)] if grade else []
-        family_scores.append(max(scores))
-    if not checked:
-        return Flag(UNDETERMINED, ["no diagnostic with a threshold is known for this point"])
-    return _flag(sum(family_scores), signs, checked)
+    families = [
+        [s for name in members if (s := _sign(name, known, thresholds, context, rule))]
+        for members in FAMILIES.values()
+    ]
+    families = [signs for signs in families if signs]
+    signs = tuple(sorted((s for f in families for s in f), key=lambda s: -s.weight * s.grade))
+    total = sum(max(s.weight for s in f) for f in families)
+    if total < _ENOUGH_KNOWN:
+        names = ", ".join(LABELS[s.name] for s in signs) or "no diagnostic with a threshold"
+        return Flag(UNDETERMINED, [f"too little is known of this point: {names}"], signs=signs)
+    grade = sum(max(s.weight for s in f) * _family_grade(f) for f in families) / total
+    return _flag(grade, signs, rule)
 
 
 def _known(values: Mapping[str, float], context: Context) -> dict[str, tuple[float, str]]:
-    """Finite values by name, with the level they were borrowed from ('' for the point's own)."""
+    """Finite values by name, with the level that each comes from."""
     borrowed = {name: found for name, found in context.evidence.items() if isfinite(found[0])}
-    return borrowed | {name: (value, "") for name, value in values.items() if isfinite(value)}
+    return borrowed | {name: (value, context.level) for name, value in values.items() if isfinite(value)}
 
 
-def _grade(found: tuple[float, str], threshold: Threshold, multiplicity: int) -> tuple[int, str]:
-    """0, 1 or 2 and the comparison in words, such as ``LUNO 0.23 > 0.10 (level cas)``."""
-    value, level = found
-    bound, strong = threshold.scaled(multiplicity)
-    if not is_over(value, bound, threshold.direction):
-        return 0, ""
-    grade = 2 if strong is not None and is_over(value, strong, threshold.direction) else 1
-    shown = strong if grade == 2 and strong is not None else bound
+def _sign(
+    name: str, known: Mapping[str, tuple[float, str]], thresholds: Thresholds, context: Context, rule: Rule
+) -> Sign | None:
+    threshold = threshold_for(name, context.multiplicity, thresholds)
+    if name not in known or threshold is None or rule.weight(name) == 0.0:
+        return None
+    value, level = known[name]
+    grade = threshold.grade(value, context.multiplicity)
+    bound = threshold.scaled(context.multiplicity)[0]
     sign = ">" if threshold.direction == "above" else "<"
-    words = f"{LABELS[threshold.name]} {_number(value)} {sign} {_number(shown)}"
-    return grade, words + (" (strong)" if grade == 2 else "") + (f" (level {level})" if level else "")
+    relation = f"{sign} {_number(bound)}" if grade > 1.0 else f"near {_number(bound)}"
+    remarks = [*(["strong"] if grade >= 2.0 else []), *([f"level {level}"] if level else [])]
+    words = f"{LABELS[name]} {_number(value)} {relation}" + (f" ({', '.join(remarks)})" if remarks else "")
+    return Sign(name, rule.weight(name), grade, words)
+
+
+def _family_grade(signs: list[Sign]) -> float:
+    return sum(s.weight * s.grade for s in signs) / sum(s.weight for s in signs)
 
 
 def _number(value: float) -> str:
     return f"{value:.2f}" if abs(value) >= 0.095 or value == 0.0 else f"{value:.2g}"
 
 
-def _flag(score: float, signs: list[tuple[float, str]], checked: list[str]) -> Flag:
-    if not signs:
-        return Flag(SINGLE, [f"below every threshold: {', '.join(checked)}"])
-    label = MULTI if score >= ENOUGH else BORDERLINE
-    ordered = sorted(signs, key=lambda sign: -sign[0])
-    return Flag(label, [words for _, words in ordered], score)
+def _flag(grade: float, signs: tuple[Sign, ...], rule: Rule) -> Flag:
+    raised = [s for s in signs if s.grade > 0.0]
+    label = SINGLE if grade < rule.borderline else BORDERLINE if grade < rule.multireference else MULTI
+    clear = [s for s in signs if s.weight >= 1.0 and s.grade >= CLEAR and s.name != NEVER_ALONE]
+    reasons = [s.words for s in raised]
+    if label == MULTI and not clear:
+        label = BORDERLINE
+        reasons.append("no more than borderline: no frontier occupation and no D2 is far over its threshold")
+    quiet = [LABELS[s.name] for s in signs if s.grade == 0.0]
+    if quiet:
+        reasons.append(
+            f"within {'their' if raised else 'every'} threshold{'s' if raised else ''}: {', '.join(quiet)}"
+        )
+    reasons.append(f"mean grade {grade:.2f} of 2")
+    return Flag(label, reasons, grade, signs)
