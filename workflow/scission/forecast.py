@@ -24,6 +24,9 @@ _REFERENCE = {
     "UHF": (0.6, 3.0),
     "UKS": (2.5, 2.2),
     "CASSCF": (1.5, 3.5),
+    "PAIR": (0.05, 3.0),
+    "ORBITAL": (0.05, 3.0),
+    "PAIR+IONIC": (0.05, 3.0),
 }
 """Reference -> (seconds at 30 basis functions, power), carried from a neighbour, instabilities followed."""
 

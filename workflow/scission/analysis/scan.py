@@ -163,9 +163,10 @@ def _why_not(level: Level, record: Record, flag: Flag) -> str:
 def copes(level: Level, scalars: Mapping[str, float]) -> bool:
     """Whether the energies of a level stay those of one whole well where the molecule is multireference.
 
-    CASSCF does by its form, full CI always, and coupled cluster with singles and doubles for two
-    electrons, where it is full CI.  An unrestricted determinant, and what is built on it, goes to the right
-    far limit by giving up spin symmetry (textbook results).
+    CASSCF and the pair functions do by their form, full CI always, and coupled cluster with singles and
+    doubles for two electrons, where it is full CI.  An unrestricted determinant, and what is built on
+    it, goes to the right far limit by giving up spin symmetry (textbook results).
     """
     exact_pair = level.correlation in ("CCSD", "CCSD(T)") and scalars.get("n_correlated") == 2
-    return level.reference in ("CASSCF", "UHF", "UKS") or level.correlation == "FCI" or exact_pair
+    whole = ("CASSCF", "UHF", "UKS", "PAIR", "PAIR+IONIC")
+    return level.reference in whole or level.correlation == "FCI" or exact_pair

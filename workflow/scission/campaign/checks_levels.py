@@ -2,7 +2,7 @@
 
 import re
 
-from scission.campaign.model import ActiveSpace, Level
+from scission.campaign.model import PICTURES, ActiveSpace, Level
 from scission.campaign.names import (
     ELEMENTS,
     basis_like,
@@ -33,7 +33,9 @@ def check_levels(parts: Parts) -> list[Problem]:
 def _correlation(level: Level, path: str) -> list[Problem]:
     method, reference = level.correlation, level.reference
     rule = ""
-    if method == "NEVPT2" and reference != "CASSCF":
+    if reference in PICTURES and method != "none":
+        rule = f"does not go on {reference}: the pictures of the bond take none"
+    elif method == "NEVPT2" and reference != "CASSCF":
         rule = f"needs a CASSCF reference, and this level has {reference}"
     elif reference == "CASSCF" and method not in ("none", "NEVPT2"):
         rule = "does not go on CASSCF, which takes none or NEVPT2"

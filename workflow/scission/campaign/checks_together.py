@@ -4,7 +4,7 @@ from collections.abc import Iterator
 
 from scission.campaign.checks_levels import ORBITAL
 from scission.campaign.electrons import Counts, atom_bases, configurations, count, determinants
-from scission.campaign.model import ActiveSpace, Level, Molecule
+from scission.campaign.model import PICTURES, ActiveSpace, Level, Molecule
 from scission.campaign.names import is_basis
 from scission.campaign.parts import Parts
 from scission.campaign.problems import Problem
@@ -26,6 +26,7 @@ def check_together(parts: Parts) -> list[Problem]:
         lacking = _lacking(molecule, level, f"levels.{level_name}.basis", molecule_name)
         counts = None if lacking else count(molecule, level)
         problems += lacking
+        problems += _picture(molecule, level, counts, level_name, use)
         if counts is not None and counts.electrons >= counts.unpaired:
             problems += _sizes(counts, level, f"levels.{level_name}", molecule_name)
         problems += _atomic_orbitals(molecule, level, f"levels.{level_name}", molecule_name)
@@ -49,6 +50,19 @@ def _spin(molecule: Molecule, level: Level, level_name: str, use: str) -> list[P
     open_shell = "UHF or ROHF" if level.reference == "RHF" else "UKS"
     rule = f"is {level.reference}, for singlets, and the molecule has multiplicity {molecule.multiplicity}"
     return [Problem(use, level_name, f"{rule}: use {open_shell}")]
+
+
+def _picture(
+    molecule: Molecule, level: Level, counts: Counts | None, level_name: str, use: str
+) -> list[Problem]:
+    """A picture of the bond is one of two electrons in a singlet between two atoms."""
+    if level.reference not in PICTURES or counts is None:
+        return []
+    found = f"{counts.electrons} electrons outside ECP cores, {len(molecule.symbols)} atoms and multiplicity"
+    if (counts.electrons, len(molecule.symbols), molecule.multiplicity) == (2, 2, 1):
+        return []
+    rule = f"is {level.reference}, for two electrons of a singlet between two atoms, and the molecule has "
+    return [Problem(use, level_name, f"{rule}{found} {molecule.multiplicity}: take another level")]
 
 
 def _lacking(molecule: Molecule, level: Level, path: str, molecule_name: str) -> list[Problem]:

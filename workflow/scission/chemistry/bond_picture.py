@@ -80,7 +80,7 @@ def describe_active_bond(solution: Solution, task: dict[str, Any]) -> None:
     active = Active(
         x[:, n_inactive : n_inactive + n_active], solution.extra["ci"][0], by_spin, x[:, :n_inactive]
     )
-    _add(solution, active_picture(active, parts, solution.natural_occupations))
+    add_picture(solution, active_picture(active, parts, solution.natural_occupations))
 
 
 def describe_pair_bond(solution: Solution, task: dict[str, Any], amplitudes: Array) -> None:
@@ -89,10 +89,11 @@ def describe_pair_bond(solution: Solution, task: dict[str, Any], amplitudes: Arr
         return
     mole = build_mole(task["molecule"], task["spec"]["basis"], np.array(task["positions"]))
     parts = partition(mole, task["fragments"])
-    _add(solution, pair_picture(parts.root @ amplitudes @ parts.root, parts))
+    add_picture(solution, pair_picture(parts.root @ amplitudes @ parts.root, parts))
 
 
-def _add(solution: Solution, picture: BondPicture) -> None:
+def add_picture(solution: Solution, picture: BondPicture) -> None:
+    """Add a bond picture to a solution's numbers, arrays and notes."""
     solution.numbers |= picture.scalars
     if picture.transfer is not None:
         solution.extra["transfer_weights"] = picture.transfer

@@ -15,6 +15,7 @@ from .casscf import finish_casscf, solve_casscf
 from .compare import likeness
 from .molecule import build_mole, root_overlap
 from .orbitals import Orbitals, not_orthonormal
+from .pictures import PICTURE_FUNCTIONS, solve_picture
 from .recording import Stopwatch, guarded, record_of
 from .reference import carried, lowdin, solve_reference
 from .solutions import solution_of_field
@@ -55,6 +56,8 @@ def finish_reference(task: dict[str, Any], store: Store, watch: Stopwatch) -> Re
     if task["spec"]["reference"] == "CASSCF":
         solution = finish_casscf(task, record)
         describe_active_bond(solution, task)
+    elif task["spec"]["reference"] in PICTURE_FUNCTIONS:
+        solution = solve_picture(task)
     else:
         mole = build_mole(task["molecule"], task["spec"]["basis"], np.array(task["positions"]))
         field = scf.put_orbitals(scf.build_field(mole, task["spec"]), carried(record, mole), record.scalars["energy"])
@@ -72,6 +75,8 @@ def finish_reference(task: dict[str, Any], store: Store, watch: Stopwatch) -> Re
 def _solve(task: dict[str, Any], store: Store, watch: Stopwatch) -> Record:
     if task["spec"]["reference"] == "CASSCF":
         solution = solve_casscf(task, store)
+    elif task["spec"]["reference"] in PICTURE_FUNCTIONS:
+        solution = solve_picture(task)
     else:
         field, _, remark = solve_reference(task, store)
         solution = solution_of_field(field, task["spec"], diagnose=False)

@@ -13,6 +13,7 @@ from typing import Any
 import numpy as np
 
 from scission.campaign import Molecule, Scan
+from scission.campaign.model import PICTURES
 from scission.geometry import ScanPath, equilibrium_guess_angstrom, path_at
 
 from .identity import canonical, reference_key
@@ -46,6 +47,8 @@ def build_chain(name: str, molecule: Molecule, scan: Scan, path: ScanPath, spec:
     grid = [float(v) for v in path.values[:, 0]]
     equilibrium = equilibrium_guess_angstrom(molecule, scan)
     extra = auxiliary_lengths(grid, equilibrium, need_stretched=spec["reference"] == "CASSCF")
+    if spec["reference"] in PICTURES:  # each geometry by itself: nothing is carried
+        extra = []
     nodes = [
         _node(facts, spec, path.bonds, x, positions, auxiliary=False)
         for x, positions in zip(grid, path.positions, strict=True)

@@ -16,6 +16,7 @@ from __future__ import annotations
 from collections.abc import Callable
 from typing import Any
 
+from scission.campaign.model import PICTURES
 from scission.records.store import Store
 
 from .chain import ChainState
@@ -40,6 +41,8 @@ def walk_chain(chain: dict[str, Any], store: Store, run: Run) -> dict[str, Any]:
         name, keys, crossings (see :mod:`.reconcile`) and, by key, energies that were lowered.
     """
     state = ChainState(chain, store, run)
+    if chain["spec"]["reference"] in PICTURES:
+        return _evaluate(state)
     if chain["spec"]["follow"] == "lowest":
         take_lowest(state)
     else:
@@ -53,6 +56,16 @@ def walk_chain(chain: dict[str, Any], store: Store, run: Run) -> dict[str, Any]:
         "crossings": crossings,
         "lowered": state.lowered,
     }
+
+
+def _evaluate(state: ChainState) -> dict[str, Any]:
+    """Compute every node by itself: the pictures of a bond have no state that could be lost on the way."""
+    points = [node for node in state.nodes if not node.auxiliary]
+    for node in points:
+        if not state.settled(node):
+            state.solve(node, [])
+    state.finish()
+    return {"name": state.chain["name"], "keys": [n.key for n in points], "crossings": [], "lowered": {}}
 
 
 __all__ = ["walk_chain"]
