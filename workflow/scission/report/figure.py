@@ -10,6 +10,7 @@ from matplotlib.axes import Axes
 from matplotlib.legend import Legend
 
 from scission.report.axis import label, set_lengths
+from scission.report.bond import draw_bond, has_bond_picture
 from scission.report.canvas import STYLE, Figure, blank, mpl
 from scission.report.diagnostics import draw_diagnostic, shown
 from scission.report.energies import draw_energies, mark_handles
@@ -18,11 +19,12 @@ from scission.report.style import looks
 # Inches.  Fixed margins, so that the axes of all figures of a campaign line up under each other.
 WIDTH, _LEFT, _RIGHT, _BOTTOM = 8.0, 1.5, 0.9, 0.55
 _TITLE, _LEGEND_ROW, _ENERGIES, _PANEL, _GAP = 0.42, 0.175, 3.7, 0.56, 0.07
+_BOND = 0.85
 _LEGEND_COLUMNS = 6
 
 
 def draw_scan(scan: str, frames: Mapping[str, pd.DataFrame], coordinate: str = "bond length") -> Figure:
-    """Figure of one scan from the tables ``points`` and ``diagnostics``.
+    """Figure of one scan from the tables ``points``, ``diagnostics`` and ``bond_picture``.
 
     Args:
         scan: name of the scan.
@@ -36,17 +38,23 @@ def draw_scan(scan: str, frames: Mapping[str, pd.DataFrame], coordinate: str = "
     if points.empty:
         raise ValueError(f"there is no scan {scan} in the tables")
     diagnostics = frames["diagnostics"][frames["diagnostics"].scan == scan]
+    bond = frames["bond_picture"][frames["bond_picture"].scan == scan]
     with mpl.rc_context(STYLE):
-        return _draw(scan, points, diagnostics, coordinate)
+        return _draw(scan, points, diagnostics, bond, coordinate)
 
 
-def _draw(scan: str, points: pd.DataFrame, diagnostics: pd.DataFrame, coordinate: str) -> Figure:
+def _draw(
+    scan: str, points: pd.DataFrame, diagnostics: pd.DataFrame, bond: pd.DataFrame, coordinate: str
+) -> Figure:
     names, levels = shown(diagnostics), looks(list(dict.fromkeys(points.level)))
     columns = _columns(levels)
-    figure, axes = _panels(len(names), -(-len(levels) // columns))
+    sizes = [_ENERGIES, *[_PANEL] * len(names), *[_BOND] * has_bond_picture(bond)]
+    figure, axes = _panels(sizes, -(-len(levels) // columns))
     handles = draw_energies(axes[0], points, levels)
-    for panel, name in zip(axes[1:], names, strict=True):
+    for panel, name in zip(axes[1:], names, strict=False):
         draw_diagnostic(panel, diagnostics[diagnostics.diagnostic == name], levels)
+    if has_bond_picture(bond):
+        draw_bond(axes[-1], bond, levels)
     logarithmic = False
     for panel in axes:
         logarithmic = set_lengths(panel, points.coordinate_angstrom.to_numpy())
@@ -88,14 +96,15 @@ def _legend(figure: Figure, handles: Sequence[Artist], top: float, columns: int,
     return top + _LEGEND_ROW * -(-len(handles) // columns)
 
 
-def _panels(n_diagnostics: int, legend_rows: int) -> tuple[Figure, list[Axes]]:
-    """Figure and its axes, from top to bottom."""
+def _panels(sizes: Sequence[float], legend_rows: int) -> tuple[Figure, list[Axes]]:
+    """Figure and its axes, from top to bottom, of the given heights in inches."""
     top = _TITLE + _LEGEND_ROW * (legend_rows + 1) + 0.12
-    height = top + _ENERGIES + n_diagnostics * (_PANEL + _GAP) + _BOTTOM
+    height = top + sum(sizes) + _GAP * (len(sizes) - 1) + _BOTTOM
     figure = blank(WIDTH, height)
-    edges = [height - top - _ENERGIES]
-    edges += [edges[0] - (i + 1) * (_PANEL + _GAP) for i in range(n_diagnostics)]
-    sizes = [_ENERGIES, *[_PANEL] * n_diagnostics]
+    edges, at = [], height - top + _GAP
+    for size in sizes:
+        at -= size + _GAP
+        edges.append(at)
     width = WIDTH - _LEFT - _RIGHT
     boxes = [
         (_LEFT / WIDTH, y / height, width / WIDTH, h / height) for y, h in zip(edges, sizes, strict=True)
