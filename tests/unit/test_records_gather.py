@@ -184,7 +184,7 @@ def test_an_interrupted_gather_leaves_the_old_file(tmp_path, monkeypatch):
     def broken(*_, **__):
         raise KeyboardInterrupt
 
-    monkeypatch.setattr(sys.modules["scission.records.gather"], "recall", broken)
+    monkeypatch.setattr(sys.modules["scission.records.gather"], "recall_point", broken)
     with pytest.raises(KeyboardInterrupt):
         gather(planned(), store, out, {"turn": 2})
 

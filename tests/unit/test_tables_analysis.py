@@ -126,7 +126,7 @@ def test_verdicts_use_what_other_levels_know(analysis):
     far = row(analysis.frames["points"], scan="n-n", level="uhf", point=25)
 
     assert far.flag == "multireference"
-    assert "(level ccsd-t)" in far.reasons
+    assert "level ccsd-t)" in far.reasons
 
 
 def test_a_lost_point_is_judged_by_the_other_levels(analysis):

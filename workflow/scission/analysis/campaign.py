@@ -10,14 +10,24 @@ from typing import Any
 import pandas as pd
 
 from scission.analysis import limits, rows
+from scission.analysis.comparing import (
+    Scorecard,
+    add_tae_share,
+    compare_levels,
+    comparison_rows,
+    verdict_rows,
+)
+from scission.analysis.onset_rows import onset_rows
 from scission.analysis.provenance import Sources, provenance
 from scission.analysis.scan import Bond, LevelResult, conclude
 from scission.campaign import Campaign
 from scission.geometry import build_path
 from scission.masses import reduced_mass
-from scission.records import Planned, Record, Store, recall
+from scission.records import Planned, Record, Store, recall_point
 from scission.tables import COLUMNS, frame
 from scission.thresholds import Override, Thresholds, resolve
+from scission.thresholds.rule import RULE, Rule, changed
+from scission.units import HARTREE_IN_KCAL_PER_MOL
 
 _ARRAYS = ("state_energies", "state_labels", "transfer_weights")
 
@@ -80,7 +90,9 @@ def analyse(
     """
     tables: dict[str, list[dict[str, Any]]] = {name: [] for name in COLUMNS}
     sources = Sources()
-    thresholds = resolve(_overrides(campaign))
+    thresholds, rule = resolve(_overrides(campaign)), _rule(campaign)
+    tolerance = campaign.comparison.tolerance_kcal_per_mol
+    card = Scorecard(tolerance / HARTREE_IN_KCAL_PER_MOL)
     coordinates = {}
     for scan, members in _by_scan(points).items():
         coordinates[scan] = next(iter(members.values()))[0].names[0]
@@ -90,12 +102,19 @@ def analyse(
         sums = {r.name: limits.fragment_sums(campaign, scan, r.level, store) for r in results}
         for result in results:
             result.fragment_sum = sums[result.name].neutral
-        conclude(results, molecule.multiplicity, thresholds, bond, campaign.fit.models)
+            result.fragment_triples = sums[result.name].triples
+            add_tae_share(result)
+        conclude(results, molecule.multiplicity, thresholds, bond, campaign.fit.models, rule)
+        compare_levels(results, campaign.reference_level, tolerance / HARTREE_IN_KCAL_PER_MOL)
+        card.add(results, molecule.multiplicity, thresholds)
         for result in results:
             _add(tables, scan, result, molecule.multiplicity, thresholds, bond)
+            tables["verdicts"] += verdict_rows(result, scan)
+            tables["comparison"] += comparison_rows(result, scan, campaign.reference_level or "", tolerance)
             _add_limits(tables, scan, result, sums[result.name], molecule.multiplicity)
             tables["failures"] += rows.failure_rows(result, suggest or _no_remedy)
             tables["crossings"] += rows.crossing_rows(result, crossings or {})
+    tables["scorecard"] += card.rows(thresholds)
     frames = {name: frame(name, content) for name, content in tables.items()}
     made = provenance(campaign, facts or {}, sources)
     return Analysis(campaign, frames, coordinates, made, sources.mixed())
@@ -131,7 +150,7 @@ def _load(
     name: str, points: list[Planned], campaign: Campaign, store: Store, sources: Sources
 ) -> LevelResult:
     ordered = sorted(points, key=lambda point: point.number)
-    records = [recall(store, point.key, _ARRAYS) for point in ordered]
+    records = [recall_point(store, point, _ARRAYS) for point in ordered]
     for record in records:
         sources.add(record)
     return LevelResult(name, campaign.levels[name], ordered, records)
@@ -139,7 +158,14 @@ def _load(
 
 def _overrides(campaign: Campaign) -> dict[str, Override]:
     given = campaign.diagnostics.thresholds
-    return {name: Override(item.value, item.source) for name, item in given.items()}
+    return {n: Override(item.value, item.source, item.strong, item.direction) for n, item in given.items()}
+
+
+def _rule(campaign: Campaign) -> Rule:
+    given, limits_given = campaign.diagnostics.weights, campaign.diagnostics.limits
+    sources = [item.source for item in given.values()] + ([limits_given.source] if limits_given else [])
+    own = (limits_given.borderline, limits_given.multireference) if limits_given else None
+    return changed(RULE, {name: item.value for name, item in given.items()}, own, "; ".join(sources))
 
 
 def _bond(campaign: Campaign, scan: str) -> Bond:
@@ -159,7 +185,7 @@ def _add(
 ) -> None:
     tables["points"] += rows.point_rows(result)
     tables["diagnostics"] += rows.diagnostic_rows(result, multiplicity, thresholds)
-    tables["onsets"] += rows.onset_rows(result, scan, multiplicity, thresholds)
+    tables["onsets"] += onset_rows(result, scan, multiplicity, thresholds)
     tables["fits"] += rows.fit_rows(result, scan)
     tables["models"] += rows.model_rows(result, scan, bond.reduced_mass)
     tables["residuals"] += rows.residual_rows(result)

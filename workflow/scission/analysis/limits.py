@@ -42,7 +42,7 @@ class Sums:
 
     ``neutral`` is the lowest sum that leaves the charge where it belongs, ``ionic`` the lowest with one
     electron moved; ``open_shell`` says whether the neutral fragments have unpaired electrons; ``problem``
-    why there is no neutral sum, or which fragments of it are missing.
+    why there is no neutral sum, or which fragments of it are missing; ``triples`` is the part of (T) in it.
     """
 
     neutral: float = float("nan")
@@ -51,6 +51,7 @@ class Sums:
     ionic_words: str = ""
     open_shell: bool = True
     problem: str = ""
+    triples: float = float("nan")
 
 
 @dataclass(frozen=True)
@@ -90,6 +91,7 @@ def fragment_sums(campaign: Campaign, scan: str, level: Level, store: Store) -> 
         _words(molecule, path.fragments, low_ionic[1], spins=False) if low_ionic else "",
         any(state.multiplicity > 1 for state in best.states),
         lost,
+        _triples(best, records),
     )
 
 
@@ -100,6 +102,12 @@ def _sum(split: Split, records: dict[str, Record | None]) -> float:
         good = record is not None and record.status == "converged"
         total += float(record.scalars["energy"]) if good and record is not None else float("nan")
     return total
+
+
+def _triples(split: Split, records: dict[str, Record | None]) -> float:
+    """Sum of the fragments' (T) energies, hartree; fragments of too few electrons have none."""
+    found = [records[state.key] for state in split.states]
+    return sum(float(r.scalars.get("energy_triples", 0.0)) for r in found if r is not None)
 
 
 def _lost(records: dict[str, Record | None], splits: Iterable[Split]) -> str:

@@ -13,7 +13,7 @@ from scission.diagnostics import DIAGNOSTICS
 from scission.records import Planned, Record, settled_scalars
 from scission.records.schema import SCALARS
 from scission.thresholds import Thresholds, is_over, threshold_for
-from scission.units import DALTON_IN_ELECTRON_MASS, HARTREE_IN_EV
+from scission.units import DALTON_IN_ELECTRON_MASS, HARTREE_IN_EV, HARTREE_IN_KCAL_PER_MOL
 
 Row = dict[str, Any]
 
@@ -34,7 +34,11 @@ def where(point: Planned) -> Row:
 def point_rows(result: LevelResult) -> Iterator[Row]:
     """One row a planned point, whatever happened to it."""
     energy, bottom = result.energy, result.bottom
-    for point, record, flag, value in zip(result.points, result.records, result.flags, energy, strict=True):
+    blank = np.full(energy.shape, np.nan)
+    errors = blank if result.comparison is None else result.comparison.error
+    for point, record, flag, value, error in zip(
+        result.points, result.records, result.flags, energy, errors, strict=True
+    ):
         scalars = settled_scalars(record)
         yield where(point) | {
             "status": record.status,
@@ -53,6 +57,8 @@ def point_rows(result: LevelResult) -> Iterator[Row]:
             "wall_s": scalars.get("wall_s"),
             "cpu_s": scalars.get("cpu_s"),
             "peak_memory_mb": scalars.get("peak_memory_mb"),
+            "mean_grade": flag.grade,
+            "error_kcal_per_mol": error * HARTREE_IN_KCAL_PER_MOL,
         }
 
 
@@ -79,23 +85,6 @@ def _judged(name: str, value: float, multiplicity: int, thresholds: Thresholds) 
     over = is_over(value, bound, threshold.direction) if np.isfinite(value) else None
     judged = {"threshold": bound, "over": over, "direction": threshold.direction}
     return row | judged | {"threshold_source": threshold.source}
-
-
-def onset_rows(result: LevelResult, scan: str, multiplicity: int, thresholds: Thresholds) -> Iterator[Row]:
-    """One row a crossing; one with an empty place for a diagnostic that crosses nowhere."""
-    for name, crossings in result.onsets.items():
-        threshold = threshold_for(name, multiplicity, thresholds)
-        for crossing in crossings:
-            yield {
-                "scan": scan,
-                "level": result.name,
-                "diagnostic": name,
-                "onset_angstrom": crossing.onset,
-                "lower_angstrom": crossing.lower,
-                "upper_angstrom": crossing.upper,
-                "threshold": threshold.scaled(multiplicity)[0] if threshold else None,
-                "what": crossing.note,
-            }
 
 
 def fit_rows(result: LevelResult, scan: str) -> Iterator[Row]:

@@ -7,18 +7,18 @@ from dataclasses import dataclass, field
 
 import numpy as np
 
+from scission.analysis.onset_rows import onsets_of
 from scission.campaign import Level
 from scission.curves import Curve, FitReport, fit_curve
 from scission.records import Planned, Record
-from scission.thresholds import Thresholds, threshold_for
+from scission.thresholds import Thresholds
 from scission.units import ANGSTROM_IN_BOHR
-from scission.verdict import Context, Flag, Onset, judge, onsets
+from scission.verdict import RULE, Comparison, Context, Flag, Onset, Rule, judge
 
 RIPPLE = 1e-3
 """A dip shallower than this (hartree) is not taken for the well when energies are shown from its bottom."""
 
 MULTIREFERENCE = "multireference"
-NEVER = "stays within the threshold at every known point"
 
 
 @dataclass(frozen=True)
@@ -33,7 +33,8 @@ class Bond:
 class LevelResult:
     """One level of a scan: its points in the order of the scan, and what was concluded from them.
 
-    ``fragment_sum`` is the lowest energy of the separate fragments, hartree; NaN for unknown.
+    ``fragment_sum`` is the lowest energy of the separate fragments, hartree, ``fragment_triples`` the part of
+    (T) in it; NaN for unknown.
     """
 
     name: str
@@ -44,6 +45,8 @@ class LevelResult:
     onsets: dict[str, list[Onset]] = field(default_factory=dict)
     fits: FitReport | None = None
     fragment_sum: float = float("nan")
+    fragment_triples: float = float("nan")
+    comparison: Comparison | None = None
 
     @property
     def coordinate(self) -> np.ndarray:
@@ -85,16 +88,17 @@ def conclude(
     thresholds: Thresholds,
     bond: Bond,
     models: Sequence[str],
+    rule: Rule = RULE,
 ) -> None:
     """Fill in flags, onsets and fits of all levels of one scan."""
     for result in levels:
-        result.flags = _flags(result, levels, multiplicity, thresholds)
-        result.onsets = _onsets(result, multiplicity, thresholds)
+        result.flags = _flags(result, levels, multiplicity, thresholds, rule)
+        result.onsets = onsets_of(result, levels, multiplicity, thresholds)
         result.fits = fit_curve(_curve(result, bond), list(models))
 
 
 def _flags(
-    result: LevelResult, levels: Sequence[LevelResult], multiplicity: int, thresholds: Thresholds
+    result: LevelResult, levels: Sequence[LevelResult], multiplicity: int, thresholds: Thresholds, rule: Rule
 ) -> list[Flag]:
     others = [other for other in levels if other is not result]
     by_number = [
@@ -104,7 +108,8 @@ def _flags(
     flags = []
     for point, record in zip(result.points, result.records, strict=True):
         here = [(name, records[point.number]) for name, records in by_number if point.number in records]
-        flags.append(judge(record.diagnostics, thresholds, Context(multiplicity, _evidence(here))))
+        context = Context(multiplicity, _evidence(here), result.name)
+        flags.append(judge(record.diagnostics, thresholds, context, rule))
     return flags
 
 
@@ -116,24 +121,6 @@ def _evidence(others: Sequence[tuple[str, Record]]) -> dict[str, tuple[float, st
             for diagnostic, value in record.diagnostics.items():
                 evidence.setdefault(diagnostic, (value, name))
     return evidence
-
-
-def _onsets(result: LevelResult, multiplicity: int, thresholds: Thresholds) -> dict[str, list[Onset]]:
-    found: dict[str, list[Onset]] = {}
-    for name in diagnostics_of(result.records):
-        threshold = threshold_for(name, multiplicity, thresholds)
-        values = result.values(name)
-        if threshold is None or not np.isfinite(values).any():
-            continue
-        bound = threshold.scaled(multiplicity)[0]
-        crossings = onsets(result.coordinate, values, bound, threshold.direction)
-        found[name] = crossings or [Onset(np.nan, np.nan, np.nan, NEVER)]
-    return found
-
-
-def diagnostics_of(records: Sequence[Record]) -> list[str]:
-    """Names of all diagnostics with a value in any of the records, in the order of their first appearance."""
-    return list(dict.fromkeys(name for record in records for name in record.diagnostics))
 
 
 def _curve(result: LevelResult, bond: Bond) -> Curve:

@@ -4,8 +4,8 @@
 ``gather`` streams them into one HDF5 file (imported from there, since it loads h5py).
 """
 
-from scission.records.recall import Planned, recall, settled_scalars
+from scission.records.recall import Planned, recall, recall_point, settled_scalars
 from scission.records.store import Record, Store
 from scission.records.validate import settled
 
-__all__ = ["Planned", "Record", "Store", "recall", "settled", "settled_scalars"]
+__all__ = ["Planned", "Record", "Store", "recall", "recall_point", "settled", "settled_scalars"]

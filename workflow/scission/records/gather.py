@@ -23,7 +23,7 @@ from typing import Any, Protocol
 import h5py
 
 from scission.records.atomic import replacing
-from scission.records.recall import Planned, recall
+from scission.records.recall import Planned, recall_point
 from scission.records.scan_group import ScanGroup
 from scission.records.schema import ARRAYS, SCHEMA_VERSION, TOO_LARGE_TO_GATHER
 from scission.records.store import Store
@@ -78,7 +78,7 @@ def gather(
 
 def _fill(group: ScanGroup, store: Store, diagnostics: Mapping[str, Described], flags: Flags) -> None:
     for point in group.points:
-        record = recall(store, point.key, _ARRAY_NAMES)
+        record = recall_point(store, point, _ARRAY_NAMES)
         flag = flags.get((point.scan, point.level, point.number), ("", ""))
         group.add(point, record, flag)
     group.finish(diagnostics)

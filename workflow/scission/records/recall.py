@@ -44,6 +44,22 @@ def recall(store: Store, key: str, arrays: bool | tuple[str, ...] = False) -> Re
     return Record(key, "point", "lost", reason=reason, message=REASONS[reason], attempts=attempts)
 
 
+def recall_point(store: Store, point: Planned, arrays: bool | tuple[str, ...] = False) -> Record:
+    """The record of a planned point with the costly diagnostics that have records of their own.
+
+    Raises:
+        OSError: the file system does not give out a record that is there.
+    """
+    record = recall(store, point.key, arrays)
+    for calculation, key in getattr(point, "extras", ()):  # only points of a plan that includes some have any
+        extra = recall(store, key)
+        record.diagnostics = {**record.diagnostics, **extra.diagnostics}
+        record.absent = {**record.absent, **extra.absent}
+        if extra.status not in ("converged", "unconverged"):
+            record.absent[calculation] = f"{extra.status}: {extra.message}"
+    return record
+
+
 def settled_scalars(record: Record) -> dict[str, float]:
     """Scalars fit for a table: a calculation that did not converge has a cost but no energy.
 

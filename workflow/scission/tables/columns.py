@@ -55,6 +55,22 @@ COLUMNS: dict[str, tuple[Column, ...]] = {
         Column("energy_correlation_hartree", "float", "hartree", "correlation energy on top of it"),
         Column("cpu_s", "float", "s", "processor time of the calculation"),
         Column("peak_memory_mb", "float", "MB", "largest resident memory of the process"),
+        Column("mean_grade", "float", "1", "how far the diagnostics speak against one determinant, 0 to 2"),
+        Column(
+            "error_kcal_per_mol",
+            "float",
+            "kcal/mol",
+            "energy against the reference level, zero at that level's minimum",
+        ),
+    ),
+    "verdicts": (
+        _SCAN,
+        _LEVEL,
+        Column("flag", "str", "1", "flag of a stretch of neighbouring points"),
+        Column("from_angstrom", "float", "angstrom", "first point of the stretch"),
+        Column("to_angstrom", "float", "angstrom", "last point of the stretch"),
+        Column("points", "int", "1", "number of points"),
+        Column("reasons", "str", "1", "the verdict's reasons at the first point, in words"),
     ),
     "diagnostics": (
         *_WHERE,
@@ -122,6 +138,7 @@ COLUMNS: dict[str, tuple[Column, ...]] = {
         Column("quantity", "str", "1", "measure of the difference: npe, largest_error ..."),
         Column("value", "float", "see unit", "its value"),
         Column("unit", "str", "1", "its unit"),
+        Column("what", "str", "1", "what the quantity is; for the ends of the trusted interval why there"),
     ),
     "scorecard": (
         _DIAGNOSTIC,
@@ -129,6 +146,20 @@ COLUMNS: dict[str, tuple[Column, ...]] = {
         Column("hits", "int", "1", "points over the threshold where the level was in error"),
         Column("false_alarms", "int", "1", "points over the threshold where it was not"),
         Column("best_threshold", "float", "see diagnostics", "threshold that separates the two best"),
+        Column("level", "str", "1", "level whose error the diagnostic foretells"),
+        Column("misses", "int", "1", "points within the threshold where the level was in error"),
+        Column("correct", "int", "1", "points within the threshold where it was not"),
+        Column("skill", "float", "1", "share of errors found less share of false alarms, -1 to 1"),
+        Column("best_hits", "int", "1", "hits at the best threshold"),
+        Column("best_misses", "int", "1", "misses at the best threshold"),
+        Column("best_false_alarms", "int", "1", "false alarms at the best threshold"),
+        Column("best_skill", "float", "1", "skill at the best threshold"),
+        Column(
+            "late_angstrom", "float", "angstrom", "onset less end of the trusted interval, mean of the scans"
+        ),
+        Column("earliest_angstrom", "float", "angstrom", "the same, smallest; negative warns in time"),
+        Column("latest_angstrom", "float", "angstrom", "the same, largest; positive warns too late"),
+        Column("scans", "int", "1", "number of scans that have both lengths"),
     ),
     "limits": (
         _SCAN,
