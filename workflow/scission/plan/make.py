@@ -16,11 +16,15 @@ from .chains import build_chain, merge_chains, molecule_facts
 from .extras import add_extras
 from .fragments import fragment_work
 from .identity import canonical, digest, point_key, reference_key, reference_spec
+from .stages import FEWEST_NODES, cut
 from .types import Chain, Job, Plan, Point
 from .write import campaign_digest
 
 BLOCK_SECONDS = 60.0
 """Work given to one job on a local machine, by the forecast; a cluster's profile asks for more."""
+
+_COSTLY = 4.0
+"""A chain that takes longer than so many blocks is cut into stages."""
 
 _CARRIES_AMPLITUDES = ("CCSD", "CCSD(T)")
 _NEIGHBOURS = 8
@@ -41,8 +45,9 @@ def make_plan(campaign: Campaign, block_seconds: float = BLOCK_SECONDS) -> Plan:
         work += scan_work
         extra += scan_extra
         chains += _scan_chains(campaign, scan_name, scan, path)
-    jobs = _reference_jobs(merge_chains(chains), [w for w in work if w["correlation"] == "none"])
-    owner = {key: job.id for job in jobs for key in job.payload["reference_keys"]}
+    publish = [w for w in work if w["correlation"] == "none"]
+    jobs = _reference_jobs(merge_chains(chains), publish, block_seconds)
+    owner = {key: job.id for job in jobs for key in job.payload["reference_keys"]}  # the last stage comes last
     jobs += _correlate_jobs([w for w in work if w["correlation"] != "none"] + extra, owner, block_seconds)
     jobs += _fragment_jobs(campaign, points, owner)
     return Plan(campaign, tuple(points), tuple(jobs), PHYSICS_VERSION, campaign_digest(campaign, block_seconds))
@@ -105,20 +110,49 @@ def _scan_chains(campaign: Campaign, name: str, scan: Scan, path: ScanPath) -> l
     return [build_chain(name, molecule, scan, path, spec) for spec in specs.values()]
 
 
-def _reference_jobs(chains: Sequence[Chain], publish: Sequence[dict[str, Any]]) -> list[Job]:
-    """Return one job a group of chains that share a node: no two jobs ever write the same record."""
+def _reference_jobs(
+    chains: Sequence[Chain], publish: Sequence[dict[str, Any]], block_seconds: float
+) -> list[Job]:
+    """Return one job a group of chains that share a node: no two jobs ever write the same record.
+
+    A long and costly chain that shares nothing gets three stages instead.
+    """
     by_reference: dict[str, list[dict[str, Any]]] = defaultdict(list)
     for item in publish:
         by_reference[item["reference_key"]].append(item)
-    jobs = []
+    jobs: list[Job] = []
     for group in _sharing(chains):
         keys = list(dict.fromkeys(n.key for c in group for n in c.nodes))
         published = _unique(item for key in keys for item in by_reference[key])
-        seconds = sum(forecast.reference_seconds(c.molecule, c.spec) * len(c.nodes) for c in group)
-        memory = max(forecast.reference_memory_mb(c.molecule, c.spec) for c in group)
-        payload = {"chains": [_chain_payload(c) for c in group], "reference_keys": keys, "publish": published}
-        jobs.append(_job("reference", group[0].name, (), payload, len(keys), seconds, memory))
+        needs: tuple[str, ...] = ()
+        if len(group) == 1 and len(keys) >= FEWEST_NODES and _seconds(group[0]) > _COSTLY * block_seconds:
+            spec = group[0].spec
+            spine, blocks = cut(group[0], careful=spec["follow"] == "lowest" or spec["reference"] == "CASSCF")
+            jobs.append(_walk_job([spine.chain], spine.phase, (), []))
+            stages = [_walk_job([b.chain], b.phase, (jobs[-1].id,), []) for b in blocks]
+            jobs += stages
+            needs = tuple(job.id for job in stages)
+        jobs.append(_walk_job(group, "whole", needs, published))
     return jobs
+
+
+def _walk_job(
+    chains: Sequence[Chain], phase: str, needs: tuple[str, ...], published: list[dict[str, Any]]
+) -> Job:
+    """Return the job that walks some chains, or parts of one."""
+    keys = list(dict.fromkeys(n.key for c in chains for n in c.nodes))
+    seconds = sum(_seconds(c) for c in chains)
+    memory = max(forecast.reference_memory_mb(c.molecule, c.spec) for c in chains)
+    payload = {
+        "chains": [{**_chain_payload(c), "phase": phase} for c in chains],
+        "reference_keys": keys,
+        "publish": published,
+    }
+    return _job("reference", chains[0].name, needs, payload, len(keys), seconds, memory)
+
+
+def _seconds(chain: Chain) -> float:
+    return forecast.reference_seconds(chain.molecule, chain.spec) * len(chain.nodes)
 
 
 def _correlate_jobs(work: Sequence[dict[str, Any]], owner: dict[str, str], block_seconds: float) -> list[Job]:
@@ -137,20 +171,6 @@ def _correlate_jobs(work: Sequence[dict[str, Any]], owner: dict[str, str], block
             needs = tuple(dict.fromkeys(owner[i["reference_key"]] for i in block))
             memory = forecast.correlate_memory_mb(block[0])
             jobs.append(_job("correlate", ".".join(group), needs, {"points": block}, len(block), seconds * len(block), memory))
-    return jobs
-
-
-def _fragment_jobs(campaign: Campaign, points: Sequence[Point], owner: dict[str, str]) -> list[Job]:
-    """Return one job a scan, and one more for what needs references first; shared fragments come once."""
-    groups: dict[tuple[str, tuple[str, ...]], list[dict[str, Any]]] = defaultdict(list)
-    for item in fragment_work(campaign, points):
-        needs = tuple(dict.fromkeys(owner[key] for key in item.get("share_from", ())))
-        groups[item["scan"], needs].append(item)
-    jobs = []
-    for (scan, needs), items in groups.items():
-        seconds = sum(forecast.fragment_seconds(item) for item in items)
-        memory = max(forecast.correlate_memory_mb(item) for item in items)
-        jobs.append(_job("fragments", scan, needs, {"points": items}, len(items), seconds, memory))
     return jobs
 
 

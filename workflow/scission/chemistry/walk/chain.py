@@ -48,6 +48,9 @@ class ChainState:
         ]
         self.start = self.nodes[chain["start"]]
         self.stretched = self.nodes[chain["stretched"]]
+        ends = (self.nodes[0], self.nodes[-1]) if chain.get("phase") == "block" else ()
+        self._fixed = {n.key for n in ends if self.record(n) is not None}
+        """Nodes that another block shares: they are read, never written, until the chain is reconciled."""
         for node in self.nodes:
             if self.good(node):
                 self._before[node.key] = self.energy(node)
@@ -104,6 +107,8 @@ class ChainState:
 
         ``options`` are those of :func:`scission.chemistry.establish.establish_reference`.
         """
+        if node.key in self._fixed:
+            return self.good(node)
         self._again.discard(node.key)
         self._task(node, {"kind": "reference", "starts": starts, **options})
         return self.good(node)

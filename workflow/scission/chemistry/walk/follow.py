@@ -20,17 +20,14 @@ def follow_from_anchor(state: ChainState) -> None:
     for node, _ in list(state.outward(anchor)):
         if not state.settled(node):
             _carry(state, node, anchor)
-
-
-    if state.active:
-        _pursue(state)
+    _pursue(state)
 
 
 def _pursue(state: ChainState) -> None:
-    """Follow the state of the equilibrium where it differs from the one the active space was chosen on.
+    """Follow the state of the equilibrium to where finished nodes left it.
 
-    The space is chosen at the stretched bond, but the curve belongs to the state at the equilibrium; where
-    the walk from the one to the other has changed its state, the rest is computed again from this side.
+    An active space is chosen at the stretched bond, and blocks of a long chain start from its spine, but the
+    curve belongs to the state at the equilibrium; what departs from it is computed again from this side.
     """
     for node, _ in list(state.outward(state.start)):
         parent = state.good_towards(node, state.start)

@@ -15,12 +15,16 @@ ROUNDS = 8
 _CAREFUL: list[dict[str, Any]] = [{"engine": "minao"}, {"broken": True}, {"fragments": True}]
 
 
-def take_lowest(state: ChainState) -> None:
-    """Establish the anchors, walk outward from each, keep the lowest, then let neighbours exchange solutions."""
-    for anchor in _anchors(state):
-        if not state.settled(anchor):
+def take_lowest(state: ChainState, careful: bool = True) -> None:
+    """Establish the anchors, walk outward from each, keep the lowest, then let neighbours exchange solutions.
+
+    Without ``careful`` only what is there is carried on: the chain is a block between finished nodes.
+    """
+    anchors = _anchors(state) if careful else [state.nodes[0], state.nodes[-1]]
+    for anchor in anchors:
+        if careful and not state.settled(anchor):
             state.solve(anchor, _CAREFUL, choose="lowest", stability=True)
-    for anchor in _anchors(state):
+    for anchor in anchors:
         if state.good(anchor):
             _walk(state, anchor)
     _exchange(state)
