@@ -62,7 +62,7 @@ def solve_picture(task: dict[str, Any]) -> Solution:
     two = TwoOrbitals(mole, orbitals)
     amplitudes = PICTURE_FUNCTIONS[task["spec"]["reference"]](two)
     amplitudes = amplitudes / np.sqrt(two.product(amplitudes, amplitudes))
-    return _solution(task, mole, two.energy(amplitudes), orbitals @ amplitudes @ orbitals.T)
+    return _solution(task, mole, two.energy(amplitudes), orbitals, amplitudes)
 
 
 def free_atom_orbitals(task: dict[str, Any], mole: gto.Mole) -> Array:
@@ -117,12 +117,20 @@ def _doubly(angle: float) -> Array:
     return np.outer(c, c)
 
 
-def _solution(task: dict[str, Any], mole: gto.Mole, energy: float, amplitudes: Array) -> Solution:
-    """Return the picture as a Solution in its two natural orbitals; ``amplitudes`` (n_ao, n_ao)."""
+def _solution(
+    task: dict[str, Any], mole: gto.Mole, energy: float, orbitals: Array, amplitudes: Array
+) -> Solution:
+    """Return the picture as a Solution in its two natural orbitals.
+
+    ``orbitals`` are (n_ao, 2), ``amplitudes`` (2, 2) those of the pair function over them.
+    """
     parts = partition(mole, task["fragments"])
-    coefficients, vectors = np.linalg.eigh(parts.root @ amplitudes @ parts.root)
-    order = np.argsort(-np.abs(coefficients), kind="stable")[:2]
-    kept, x = coefficients[order], vectors[:, order]
+    u, _, vt = np.linalg.svd(parts.root @ orbitals, full_matrices=False)
+    basis = u @ vt  # the two orbitals, symmetrically orthogonalised
+    turn = basis.T @ parts.root @ orbitals
+    coefficients, vectors = np.linalg.eigh(turn @ amplitudes @ turn.T)
+    order = np.argsort(-np.abs(coefficients), kind="stable")
+    kept, x = coefficients[order], basis @ vectors[:, order]
     occ = 2.0 * kept**2
     solution = Solution(
         reference=task["spec"]["reference"],

@@ -11,7 +11,6 @@ from matplotlib.transforms import ScaledTranslation
 
 from scission.report.style import INK, Look
 
-_FORMS = (("bond_covalent", "-", "orthogonal"), ("vb_covalent", "", "fragments' orbitals"))
 _SAME = 1e-6
 _NAME_AT_INCHES = -0.5
 
@@ -22,7 +21,7 @@ def has_bond_picture(rows: pd.DataFrame) -> bool:
 
 
 def draw_bond(axes: Axes, rows: pd.DataFrame, looks: Mapping[str, Look]) -> None:
-    """Draw the covalent weight of each level that has one; lines orthogonal, marks over the fragments' orbitals.
+    """Draw the covalent weight of each level that has one: lines orthogonal, marks over fragments' orbitals.
 
     Levels on the same active space have the same picture and are drawn once.
     """
@@ -31,7 +30,7 @@ def draw_bond(axes: Axes, rows: pd.DataFrame, looks: Mapping[str, Look]) -> None
         level = rows[rows.level == name].sort_values("coordinate_angstrom")
         covalent = level[level.quantity == "bond_covalent"]
         values = covalent[["coordinate_angstrom", "value"]].to_numpy()
-        if not len(values) or any(v.shape == values.shape and np.allclose(v, values, atol=_SAME) for v in drawn):
+        if not len(values) or any(_same(values, other) for other in drawn):
             continue
         drawn.append(values)
         _draw_level(axes, level, look)
@@ -40,6 +39,10 @@ def draw_bond(axes: Axes, rows: pd.DataFrame, looks: Mapping[str, Look]) -> None
     axes.tick_params(axis="y", labelsize=7.5)
     axes.axhline(1.0, color=INK, linewidth=0.5, zorder=0)
     _name(axes)
+
+
+def _same(a: np.ndarray, b: np.ndarray) -> bool:
+    return a.shape == b.shape and bool(np.allclose(a, b, atol=_SAME))
 
 
 def _draw_level(axes: Axes, level: pd.DataFrame, look: Look) -> None:
