@@ -108,13 +108,21 @@ def test_harmonic_curve_has_no_anharmonicity():
 
 
 def test_extrapolated_depth_is_said_and_its_error_holds_what_no_point_saw():
-    """A scan that ends at 84 % of D_e says so, and the missing 16 % are part of the error."""
-    fit = fit_curve(morse_curve(np.linspace(1.5, 4.25, 20))).fit("morse")
+    """A scan that ends at 93 % of D_e says so, and the missing 7 % are part of the error."""
+    fit = fit_curve(morse_curve(np.linspace(1.5, 5.0, 20))).fit("morse")
 
     assert "extrapolated" in fit.message
-    assert fit.value("D_e_coverage") == pytest.approx((1 - np.exp(-1.1 * 2.25)) ** 2, abs=1e-6)
+    assert fit.value("D_e_coverage") == pytest.approx((1 - np.exp(-1.1 * 3.0)) ** 2, abs=1e-6)
     missing = (1 - fit.value("D_e_coverage")) * fit.value("D_e")
     assert fit.stderr("D_e") == pytest.approx(missing, rel=1e-6)
+
+
+def test_a_depth_with_a_large_error_is_withheld_in_words():
+    """At 84 % of D_e its error would be 16 %, more than the tenth that is allowed."""
+    fit = fit_curve(morse_curve(np.linspace(1.5, 4.25, 20))).fit("morse")
+
+    assert np.isnan(fit.value("D_e"))
+    assert "no D_e: its standard error would be 16% of it" in fit.message
 
 
 def test_a_scan_that_ends_low_in_the_well_has_no_depth():

@@ -23,7 +23,9 @@ NOISE = 1e-8  # hartree; residuals below the convergence of the energies do not 
 EXTRA_POINTS = 2
 COVERED = 0.95
 POOR = 0.01
-UNDETERMINED = 0.5
+UNDETERMINED = 0.1
+"""A D_e whose standard error is more than this part of it is withheld."""
+
 MAX_EVALUATIONS = 20000
 
 
@@ -149,15 +151,17 @@ def _judge_depth(
     """Say how much of D_e the points cover, and count the part they do not cover as its error.
 
     The covariance knows nothing of the tail that no point has seen.  A D_e left with an error
-    above half of itself is withdrawn.
+    above a tenth of itself is withheld, and the message says by how much it misses.
     """
     far = float(curve.energy[index][-1] - reference - parameters["bottom"])
     coverage = far / parameters["depth"]
     values["D_e_coverage"] = coverage
     errors["D_e"] = float(np.hypot(errors["D_e"], (1.0 - coverage) * values["D_e"]))
     if not errors["D_e"] < UNDETERMINED * values["D_e"]:
-        del values["D_e"], errors["D_e"]
-        return f"fitted; no D_e: the outermost point used reaches only {coverage:.1%} of the fitted depth"
+        share = errors.pop("D_e") / values.pop("D_e")
+        why = f"its standard error would be {share:.0%} of it, more than {UNDETERMINED:.0%}"
+        seen = f"the outermost point used lies at {coverage:.1%} of the fitted depth"
+        return f"fitted; no D_e: {why} ({seen})"
     if coverage >= COVERED:
         return f"fitted; the far limit is covered: the outermost point used lies at {coverage:.1%} of D_e"
     return f"fitted; D_e is extrapolated: the outermost point used lies at {coverage:.1%} of it"

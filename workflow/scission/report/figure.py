@@ -15,20 +15,22 @@ from scission.report.canvas import STYLE, Figure, blank, mpl
 from scission.report.diagnostics import draw_diagnostic, shown
 from scission.report.energies import draw_energies, mark_handles
 from scission.report.style import looks
+from scission.report.trust import ROW_INCHES, draw_trust, headline, trust_handles
+from scission.tables import COLUMNS
 
 # Inches.  Fixed margins, so that the axes of all figures of a campaign line up under each other.
 WIDTH, _LEFT, _RIGHT, _BOTTOM = 8.0, 1.5, 0.9, 0.55
 _TITLE, _LEGEND_ROW, _ENERGIES, _PANEL, _GAP = 0.42, 0.175, 3.7, 0.56, 0.07
-_BOND = 0.85
+_BOND, _WHY_LINE = 0.85, 0.16
 _LEGEND_COLUMNS = 6
 
 
 def draw_scan(scan: str, frames: Mapping[str, pd.DataFrame], coordinate: str = "bond length") -> Figure:
-    """Figure of one scan from the tables ``points``, ``diagnostics`` and ``bond_picture``.
+    """Figure of one scan: energies, flags and trusted intervals, diagnostics, the picture of the bond.
 
     Args:
         scan: name of the scan.
-        frames: the tables.
+        frames: the tables; what is missing besides ``points`` is left out.
         coordinate: name of the coordinate, without unit.
 
     Raises:
@@ -37,22 +39,25 @@ def draw_scan(scan: str, frames: Mapping[str, pd.DataFrame], coordinate: str = "
     points = frames["points"][frames["points"].scan == scan]
     if points.empty:
         raise ValueError(f"there is no scan {scan} in the tables")
-    diagnostics = frames["diagnostics"][frames["diagnostics"].scan == scan]
-    bond = frames["bond_picture"][frames["bond_picture"].scan == scan]
+    parts = {name: table[table.scan == scan] for name, table in frames.items() if "scan" in table}
     with mpl.rc_context(STYLE):
-        return _draw(scan, points, diagnostics, bond, coordinate)
+        return _draw(scan, parts, coordinate)
 
 
-def _draw(
-    scan: str, points: pd.DataFrame, diagnostics: pd.DataFrame, bond: pd.DataFrame, coordinate: str
-) -> Figure:
+def _draw(scan: str, parts: Mapping[str, pd.DataFrame], coordinate: str) -> Figure:
+    points, diagnostics, bond = (_table(parts, name) for name in ("points", "diagnostics", "bond_picture"))
+    verdicts, comparison, onsets = (_table(parts, name) for name in ("verdicts", "comparison", "onsets"))
     names, levels = shown(diagnostics), looks(list(dict.fromkeys(points.level)))
-    columns = _columns(levels)
-    sizes = [_ENERGIES, *[_PANEL] * len(names), *[_BOND] * has_bond_picture(bond)]
-    figure, axes = _panels(sizes, -(-len(levels) // columns))
+    columns, why = _columns(levels), headline(verdicts)
+    strip = len(levels) * ROW_INCHES + 0.1
+    sizes = [_ENERGIES, strip, *[_PANEL] * len(names), *[_BOND] * has_bond_picture(bond)]
+    top = _TITLE + _WHY_LINE * len(why.splitlines())
+    figure, axes = _panels(sizes, top, -(-len(levels) // columns))
     handles = draw_energies(axes[0], points, levels)
-    for panel, name in zip(axes[1:], names, strict=False):
-        draw_diagnostic(panel, diagnostics[diagnostics.diagnostic == name], levels)
+    draw_trust(axes[1], verdicts, comparison, levels)
+    for panel, name in zip(axes[2:], names, strict=False):
+        here = onsets[onsets.diagnostic == name]
+        draw_diagnostic(panel, diagnostics[diagnostics.diagnostic == name], levels, here)
     if has_bond_picture(bond):
         draw_bond(axes[-1], bond, levels)
     logarithmic = False
@@ -62,9 +67,18 @@ def _draw(
     axes[-1].set_xlabel(label(coordinate, logarithmic))
     height = figure.get_figheight()
     figure.text(_LEFT / WIDTH, 1 - 0.24 / height, scan, fontsize=11, fontweight="bold", va="center")
-    below = _legend(figure, handles, _TITLE, columns, 3.2)
-    _legend(figure, mark_handles(points), below + 0.02, 7, 1.2)
+    figure.text(_LEFT / WIDTH, 1 - _TITLE / height, why, fontsize=7.6, va="top", linespacing=1.25)
+    below = _legend(figure, handles, top, columns, 3.2)
+    marks = [*mark_handles(points), *trust_handles(comparison)]
+    _legend(figure, marks, below + 0.02, len(marks), 1.2)
     return figure
+
+
+def _table(parts: Mapping[str, pd.DataFrame], name: str) -> pd.DataFrame:
+    """The part of a table that is about the scan; empty where there is no such table."""
+    if name in parts:
+        return parts[name]
+    return pd.DataFrame({column.name: [] for column in COLUMNS[name]})
 
 
 def _columns(names: Collection[str]) -> int:
@@ -96,9 +110,9 @@ def _legend(figure: Figure, handles: Sequence[Artist], top: float, columns: int,
     return top + _LEGEND_ROW * -(-len(handles) // columns)
 
 
-def _panels(sizes: Sequence[float], legend_rows: int) -> tuple[Figure, list[Axes]]:
-    """Figure and its axes, from top to bottom, of the given heights in inches."""
-    top = _TITLE + _LEGEND_ROW * (legend_rows + 1) + 0.12
+def _panels(sizes: Sequence[float], head: float, legend_rows: int) -> tuple[Figure, list[Axes]]:
+    """Figure and its axes, from top to bottom, of the given heights in inches, below title and legend."""
+    top = head + _LEGEND_ROW * (legend_rows + 1) + 0.12
     height = top + sum(sizes) + _GAP * (len(sizes) - 1) + _BOTTOM
     figure = blank(WIDTH, height)
     edges, at = [], height - top + _GAP
