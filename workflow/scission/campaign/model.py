@@ -102,7 +102,8 @@ class Level(Strict):
     """A level of theory: reference, correlation method and basis."""
 
     reference: Reference = Field(
-        description="Reference wavefunction or Kohn-Sham determinant; PAIR, ORBITAL and PAIR+IONIC: pictures of a two-electron bond.",
+        description="Reference wavefunction or Kohn-Sham determinant, or a picture of a two-electron bond "
+        "(PAIR, ORBITAL, PAIR+IONIC).",
         examples=["RHF"],
     )
     functional: str | None = Field(

@@ -22,7 +22,8 @@ CAUTION = (
 
 def counts(points: pd.DataFrame, limits: pd.DataFrame | None = None) -> pd.DataFrame:
     """One row a scan and level: points, results, failures, how many points have each flag, the far limit."""
-    ends = {} if limits is None else {(r.scan, r.level): far_words(r) for r in limits.itertuples()}
+    rows_of = [] if limits is None else limits.itertuples()
+    ends = {(str(r.scan), str(r.level)): far_words(r) for r in rows_of}
     rows = []
     for (scan, level), part in points.groupby(["scan", "level"], sort=False):
         good = int((part.status == "converged").sum())
@@ -34,7 +35,7 @@ def counts(points: pd.DataFrame, limits: pd.DataFrame | None = None) -> pd.DataF
             "no result": len(part) - good,
         }
         row |= {flag: int((part.flag == flag).sum()) for flag in FLAGS}
-        rows.append(row | ({"far limit": ends.get((scan, level), "")} if limits is not None else {}))
+        rows.append(row | ({"far limit": ends.get((str(scan), str(level)), "")} if limits is not None else {}))
     return pd.DataFrame(rows)
 
 
