@@ -12,6 +12,7 @@ from scission.analysis import Analysis
 from scission.records.atomic import write_whole
 from scission.report.canvas import save
 from scission.report.figure import draw_scan
+from scission.report.judgement import SCORECARD, distrust, draw_scorecard, onset_table, score_table
 from scission.report.overview import CAUTION, best_constants, counts, failure_counts, far_limits
 
 _STYLE = """
@@ -30,10 +31,29 @@ pre { background: #f4f4f4; padding: 0.8rem; overflow-x: auto; font-size: 0.8rem;
 """
 
 _CAPTION = (
-    "Above, energies, each level from its own minimum. A filled marker stands for a point whose verdict is "
-    "single-reference, a grey one for borderline, an empty one for multireference; a cross at the lower edge "
-    "for a point without a result. Below, each diagnostic with its threshold (dashed) and the side beyond it "
-    "(shaded). Occupations that mirror another one (HONO, LUNO) are in the tables only."
+    "Above, energies, each level from its own minimum. A filled marker stands for a point whose verdict "
+    "is single-reference, a grey one for borderline, an empty one for multireference; a cross at the "
+    "lower edge for a point without a result. The strip under them shows the flag of each level along "
+    "the scan (full, grey, empty) and, where there is a reference level, the interval within which the "
+    "level keeps to it. Below, the diagnostics that decide and the weightiest others that are over, "
+    "each with its threshold (dashed), the side beyond it (shaded) and the length where it crosses; all "
+    "others are in tables/diagnostics.csv and onsets.csv."
+)
+
+_DISTRUST = (
+    "Trusted: about the minimum, as long as the error against the reference level stays within the "
+    "tolerance; empty without a reference level. Flags speak of the geometry, not of the level: CASSCF "
+    "and full CI cope with a multireference point. All stretches and reasons: tables/verdicts.csv; "
+    "errors: points.csv, comparison.csv."
+)
+_ONSETS = (
+    "First crossing of the threshold, angstrom. Brackets, further crossings and diagnostics that never "
+    "cross: tables/onsets.csv."
+)
+_SCORES = (
+    "Over all points from the minimum outward: hits are points over the threshold where the level errs "
+    "by more than the tolerance. Skill is the share of the errors found less the share of false alarms "
+    "(Youden 1950). Late by: onset less the end of the trusted interval, negative warns in time."
 )
 
 
@@ -49,6 +69,10 @@ def write_report(analysis: Analysis, folder: Path) -> list[Path]:
         svg, png = save(draw_scan(scan, analysis.frames, coordinate), folder / "figures" / scan)
         pictures[scan] = svg
         written += [svg, png]
+    scorecard = analysis.frames["scorecard"]
+    if scorecard.late_angstrom.notna().any():
+        pictures[SCORECARD], png = save(draw_scorecard(scorecard), folder / "figures" / f"_{SCORECARD}")
+        written += [pictures[SCORECARD], png]
     page = folder / "report.html"
     write_whole(page, page_html(analysis, pictures).encode("utf-8"))
     return [*written, page]
@@ -63,8 +87,13 @@ def page_html(analysis: Analysis, pictures: dict[str, Path]) -> str:
         f'<p class="caution">{escape(CAUTION)}</p>',
         "<h2>Points and flags</h2>",
         html_table(counts(frames["points"], frames["limits"])),
+        "<h2>From where on to distrust which level</h2>",
+        html_table(distrust(frames)) + f'<p class="small">{_DISTRUST}</p>',
         "<h2>Scans</h2>",
-        *(_figure(scan, path) for scan, path in pictures.items()),
+        *(_figure(scan, path) for scan, path in pictures.items() if scan != SCORECARD),
+        "<h2>Onsets of the diagnostics</h2>",
+        html_table(onset_table(frames["onsets"])) + f'<p class="small">{_ONSETS}</p>',
+        *_scorecard(frames["scorecard"], pictures.get(SCORECARD)),
         "<h2>Fits</h2>",
         _fits(frames),
         "<h2>Far limits</h2>",
@@ -82,6 +111,15 @@ def page_html(analysis: Analysis, pictures: dict[str, Path]) -> str:
         + "\n".join(parts)
         + "\n</body></html>\n"
     )
+
+
+def _scorecard(scorecard: pd.DataFrame, picture: Path | None) -> list[str]:
+    """How well the diagnostics foretold the errors; nothing without a reference level."""
+    if scorecard.empty:
+        return []
+    image = "" if picture is None else _image(picture, "How early or late each diagnostic warned")
+    table = html_table(score_table(scorecard)) + f'<p class="small">{_SCORES}</p>'
+    return ["<h2>Scorecard of the diagnostics</h2>", image, table]
 
 
 def html_table(table: pd.DataFrame) -> str:
@@ -112,10 +150,13 @@ def _opening(analysis: Analysis) -> str:
     return f"<p>{escape(words)}</p>"
 
 
-def _figure(scan: str, path: Path) -> str:
+def _image(path: Path, alt: str) -> str:
     data = base64.b64encode(path.read_bytes()).decode("ascii")
-    alt = f"Energies and diagnostics of the scan {scan}; the numbers are in tables/points.csv"
-    image = f'<img alt="{escape(alt)}" src="data:image/svg+xml;base64,{data}">'
+    return f'<img alt="{escape(alt)}" src="data:image/svg+xml;base64,{data}">'
+
+
+def _figure(scan: str, path: Path) -> str:
+    image = _image(path, f"Energies and diagnostics of the scan {scan}; the numbers are in tables/points.csv")
     return f"<figure>{image}<figcaption>{escape(scan)}. {_CAPTION}</figcaption></figure>"
 
 
