@@ -143,13 +143,10 @@ def _state(
     molecule: Molecule, level: Level, path: ScanPath, which: int, charge: int, unpaired: int
 ) -> FragmentState:
     atoms = list(path.fragments[which])
-    facts = {
-        "symbols": [molecule.symbols[a] for a in atoms],
-        "charge": charge,
-        "multiplicity": unpaired + 1,
-    }
+    symbols = [molecule.symbols[a] for a in atoms]
+    facts = {"symbols": symbols, "charge": charge, "multiplicity": unpaired + 1}
     positions = _by_itself(path.positions[-1][atoms])
-    spec = fragment_spec(level, facts["symbols"], unpaired)
+    spec = fragment_spec(level, symbols, unpaired)
     work = {
         "kind": "fragment",
         "molecule": facts,
