@@ -44,35 +44,40 @@ class Share:
 
 
 def compute_fragment(task: dict[str, Any], store: Store, watch: Stopwatch) -> Record:
-    """Return the record of a fragment; a state that the level does not have is ``skipped`` with the reason.
+    """Return the record of a fragment.
 
-    Raises:
-        RuntimeError: no reference of the scan is there to take the share of the active space from.
+    A state that the level does not have is ``skipped``, and so is one of an active space as long as no
+    reference of the scan is there to take the fragment's share from.
     """
     mole = build_mole(task["molecule"], task["spec"]["basis"], np.array(task["positions"]))
     if mole.nelectron == 0:
         return _bare(task, mole, watch)
     if max(mole.nelec) > mole.nao:
-        return _not_defined(task, watch, f"{mole.nelectron} electrons do not fit {mole.nao} basis functions")
+        return _skipped(
+            task, watch, "not-defined", f"{mole.nelectron} electrons do not fit {mole.nao} basis functions"
+        )
     if task["spec"]["reference"] != "CASSCF":
         return _record(_determinant_level(task, mole, store, watch), task, watch)
-    share = active_share(task, store, mole)
+    reference = _first_good(task["share_from"], store)
+    if reference is None:
+        words = "no reference of the scan converged, so its share of the active space is unknown"
+        return _skipped(task, watch, "reference-missing", words)
+    share = active_share(task, reference, mole)
     n_electrons = mole.nelectron - 2 * share.n_inactive
     room = mole.spin <= n_electrons and (n_electrons + mole.spin) // 2 <= share.n_active
     if not room:
         words = f"{n_electrons} active electrons, {mole.spin} unpaired, do not fit: {share.words}"
-        return _not_defined(task, watch, words)
+        return _skipped(task, watch, "not-defined", words)
     solution = _active_level(task, mole, share, n_electrons, store, watch)
     solution.notes["active_space"] = share.words
     return _record(solution, task, watch)
 
 
-def active_share(task: dict[str, Any], store: Store, mole: gto.Mole) -> Share:
-    """Return the share of the fragment ``task["which"]`` in the active space of the farthest reference.
+def active_share(task: dict[str, Any], record: Record, mole: gto.Mole) -> Share:
+    """Return the share of the fragment ``task["which"]`` in the active space of a reference of the scan.
 
     The molecule's inactive and active orbitals are localised by population and cut down to the fragment.
     """
-    record = _first_good(task["share_from"], store)
     which, fragments = task["which"], task["fragments"]
     whole = build_mole(record.inputs["molecule"], record.inputs["spec"]["basis"], record.arrays["positions"])
     parts = partition(whole, fragments if which == 0 else fragments[::-1])
@@ -90,14 +95,12 @@ def active_share(task: dict[str, Any], store: Store, mole: gto.Mole) -> Share:
     return Share(own, n_own, inverse_root @ q, words)
 
 
-def _first_good(keys: list[str], store: Store) -> Record:
+def _first_good(keys: list[str], store: Store) -> Record | None:
     for key in keys:
         record = store.read("reference", key)
         if record is not None and record.status == "converged":
             return record
-    raise RuntimeError(
-        "no reference of the scan converged, so the fragment's share of the active space is unknown"
-    )
+    return None
 
 
 def _determinant(task: dict[str, Any], spec: dict[str, Any], store: Store) -> Any:
@@ -230,9 +233,9 @@ def _bare(task: dict[str, Any], mole: gto.Mole, watch: Stopwatch) -> Record:
     return record
 
 
-def _not_defined(task: dict[str, Any], watch: Stopwatch, words: str) -> Record:
+def _skipped(task: dict[str, Any], watch: Stopwatch, reason: str, words: str) -> Record:
     record = _empty(task, watch)
-    record.status, record.reason, record.message = "skipped", "not-defined", words
+    record.status, record.reason, record.message = "skipped", reason, words
     return record
 
 

@@ -243,7 +243,8 @@ def _compute_fragments(items: list[Task], work: Attempt) -> None:
     for item in items:
         record = Ledger(work.layout.folder, item).read("fragment", item["key"], arrays=False)
         request = pending_request(work.layout, item["key"])
-        if record is None or needs_again(record, record.reference_stamp, work.number, request):
+        waiting = record is not None and record.reason == "reference-missing"
+        if record is None or waiting or needs_again(record, record.reference_stamp, work.number, request):
             work.run(item)
         else:
             work.keep(record)
