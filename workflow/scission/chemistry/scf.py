@@ -10,6 +10,7 @@ from pyscf import dft, gto
 from pyscf.lib import davidson1
 from pyscf.scf import hf, rohf, stability, uhf
 
+from .degenerate import settle_degenerate
 from .orbitals import Orbitals
 
 Array = NDArray[np.float64]
@@ -173,6 +174,11 @@ def put_orbitals(field: Any, orbitals: Orbitals, energy: float) -> Any:
     fock = field.get_fock(dm=field.make_rdm1(coeff, occ))
     field.mo_coeff, field.mo_occ = coeff, occ
     field.mo_energy, field.mo_coeff = field.canonicalize(coeff, occ, fock)
+    if unrestricted:
+        by_spin = zip(field.mo_energy, field.mo_coeff, occ, strict=True)
+        field.mo_coeff = np.array([settle_degenerate(field.mol, *spin) for spin in by_spin])
+    else:
+        field.mo_coeff = settle_degenerate(field.mol, field.mo_energy, field.mo_coeff, occ)
     field.e_tot, field.converged = energy, True
     return field
 
