@@ -50,7 +50,7 @@ def test_bars_are_the_flags_and_the_line_the_trusted_interval():
     assert [round(bar.get_x(), 3) for bar in axes.patches] == [0.8, 1.15, 1.45]
     assert max(line.get_xdata()[1] for line in axes.lines) == 1.62
     assert "to 1.62" in {text.get_text() for text in axes.texts}
-    assert trust_handles(COMPARISON)[0].get_label() == "within 1 kcal/mol of fci"
+    assert trust_handles(COMPARISON)[0].get_label() == "trusted (1 kcal/mol)"
 
 
 def test_without_a_reference_level_there_are_only_flags():

@@ -31,7 +31,11 @@ def add_tae_share(result: LevelResult) -> None:
         return
     for record, energy in zip(result.records, binding, strict=True):
         triples = record.scalars.get("energy_triples")
-        if triples is None or not energy > SHARE_OF_DEPTH * np.nanmax(binding):
+        if (
+            triples is None
+            or record.scalars.get("n_correlated", 0) < 3
+            or not energy > SHARE_OF_DEPTH * np.nanmax(binding)
+        ):
             record.absent["tae_share"] = "no triples, or too little of the binding energy is left here"
             continue
         record.absent.pop("tae_share", None)

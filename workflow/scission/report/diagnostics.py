@@ -15,7 +15,7 @@ from scission.diagnostics import DIAGNOSTICS
 from scission.report.style import INK, OVER_SHADE, THRESHOLD_DASHES, Look
 from scission.thresholds.rule import AGREEING, RULE
 
-MIRRORED = {"hono": "luno", "uhf_hono": "uhf_luno"}
+MIRRORED = {"hono": "luno", "uhf_hono": "uhf_luno", "cc_hono": "cc_luno"}
 """Occupations that add up to two with another one's for a broken pair: drawn only without the other."""
 
 MOST = 8

@@ -129,8 +129,9 @@ def mark_handles(points: pd.DataFrame) -> list[Artist]:
 
 
 def _threshold_handles() -> list[Artist]:
-    line = Line2D([], [], color=INK, linewidth=0.9, linestyle=THRESHOLD_DASHES, label="threshold")
-    return [line, Patch(facecolor=OVER_SHADE, edgecolor="#bbbbbb", linewidth=0.5, label="beyond it")]
+    shade = Patch(facecolor=OVER_SHADE, edgecolor="#777777", linewidth=0.7, label="beyond threshold")
+    shade.set_linestyle(THRESHOLD_DASHES)
+    return [shade]
 
 
 def _mark(marker: str, label: str, face: str) -> Line2D:

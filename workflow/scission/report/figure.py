@@ -21,7 +21,7 @@ from scission.tables import COLUMNS
 # Inches.  Fixed margins, so that the axes of all figures of a campaign line up under each other.
 WIDTH, _LEFT, _RIGHT, _BOTTOM = 8.0, 1.5, 0.9, 0.55
 _TITLE, _LEGEND_ROW, _ENERGIES, _PANEL, _GAP = 0.42, 0.175, 3.7, 0.56, 0.07
-_BOND, _WHY_LINE = 0.85, 0.16
+_BOND, _WHY_LINE, _WHY_LEFT = 0.85, 0.16, 0.4
 _LEGEND_COLUMNS = 6
 
 
@@ -67,7 +67,7 @@ def _draw(scan: str, parts: Mapping[str, pd.DataFrame], coordinate: str) -> Figu
     axes[-1].set_xlabel(label(coordinate, logarithmic))
     height = figure.get_figheight()
     figure.text(_LEFT / WIDTH, 1 - 0.24 / height, scan, fontsize=11, fontweight="bold", va="center")
-    figure.text(_LEFT / WIDTH, 1 - _TITLE / height, why, fontsize=7.6, va="top", linespacing=1.25)
+    figure.text(_WHY_LEFT / WIDTH, 1 - _TITLE / height, why, fontsize=7.6, va="top", linespacing=1.25)
     below = _legend(figure, handles, top, columns, 3.2)
     marks = [*mark_handles(points), *trust_handles(comparison)]
     _legend(figure, marks, below + 0.02, len(marks), 1.2)

@@ -35,7 +35,9 @@ def counts(points: pd.DataFrame, limits: pd.DataFrame | None = None) -> pd.DataF
             "no result": len(part) - good,
         }
         row |= {flag: int((part.flag == flag).sum()) for flag in FLAGS}
-        rows.append(row | ({"far limit": ends.get((str(scan), str(level)), "")} if limits is not None else {}))
+        rows.append(
+            row | ({"far limit": ends.get((str(scan), str(level)), "")} if limits is not None else {})
+        )
     return pd.DataFrame(rows)
 
 

@@ -74,11 +74,11 @@ def trust_handles(comparison: pd.DataFrame) -> list[Line2D]:
     compared = comparison[comparison.quantity == "tolerance"]
     if compared.empty:
         return []
-    words = f"within {compared['value'].iloc[0]:g} kcal/mol of {compared.reference_level.iloc[0]}"
+    words = f"trusted ({compared['value'].iloc[0]:g} kcal/mol)"
     return [Line2D([], [], color="#555555", linewidth=2.2, label=words)]
 
 
-def headline(verdicts: pd.DataFrame, width: int = 102) -> str:
+def headline(verdicts: pd.DataFrame, width: int = 125) -> str:
     """Where the flag changes outward of the well and why, in at most two lines, for the first level."""
     if verdicts.empty:
         return ""
