@@ -117,7 +117,7 @@ def _lost(records: dict[str, Record | None], splits: Iterable[Split]) -> str:
         record = records[state.key]
         if record is None:
             words[state.key] = "a fragment has no record"
-        elif record.status not in ("converged", "skipped"):
+        elif record.status != "converged" and record.reason != "not-defined":
             name = "".join(state.work["molecule"]["symbols"])
             spin = _SPINS.get(state.multiplicity, str(state.multiplicity))
             words[state.key] = f"fragment {name} {spin}: {record.message}"
