@@ -16,6 +16,9 @@ Array = NDArray[np.float64]
 _KEPT = 4
 """Sets of amplitudes kept in this process: neighbours of a scan ask for the same ones one after another."""
 
+_RANK = 6
+"""Natural orbitals of the amplitudes that are kept for comparison: a bond needs three at most, each spin."""
+
 _memory: OrderedDict[tuple[str, int], Amplitudes] = OrderedDict()
 
 
@@ -48,6 +51,32 @@ class Amplitudes:
 def amplitudes_of(solver: Any) -> Amplitudes:
     """Return the amplitudes of a converged solver with their orbitals."""
     return Amplitudes(*_orbitals(solver), solver.t1, solver.t2)
+
+
+def fingerprint(solver: Any) -> Array:
+    """Return what the amplitudes excite into: (rank, n_ao) leading natural orbitals of their virtual density.
+
+    The virtual density sum_ijb t_ij^ab t_ij^cb + sum_i t_i^a t_i^c does not depend on phases or rotations of
+    orbitals; each row is an eigenvector in the Loewdin basis, scaled by the root of its occupation, so that
+    two geometries can be compared by :func:`scission.chemistry.compare.fingerprint_overlap`.
+    """
+    _, virtual = _orbitals(solver)
+    t1, t2 = (solver.t1, solver.t2) if len(virtual) > 1 else ((solver.t1,), (solver.t2,))
+    density = sum(v @ d @ v.T for v, d in zip(virtual, _virtual_densities(t1, t2), strict=True))
+    values, vectors = np.linalg.eigh(density)
+    leading = slice(-min(_RANK, len(values)), None)
+    return (vectors[:, leading] * np.sqrt(values[leading].clip(0.0))).T[::-1].copy()
+
+
+def _virtual_densities(t1: Any, t2: Any) -> list[Array]:
+    """Return the virtual density of each spin, (n_vir, n_vir)."""
+    singles = [t.T @ t for t in t1]
+    if len(t2) == 1:
+        return [singles[0] + np.einsum("ijab,ijcb->ac", t2[0], t2[0], optimize=True)]
+    aa, ab, bb = t2
+    alpha = np.einsum("ijab,ijcb->ac", aa, aa, optimize=True) / 2 + np.einsum("ijab,ijcb->ac", ab, ab, optimize=True)
+    beta = np.einsum("ijab,ijcb->ac", bb, bb, optimize=True) / 2 + np.einsum("ijba,ijbc->ac", ab, ab, optimize=True)
+    return [singles[0] + alpha, singles[1] + beta]
 
 
 def remember(reference_key: str, frozen: int, amplitudes: Amplitudes) -> None:

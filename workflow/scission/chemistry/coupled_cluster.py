@@ -11,7 +11,7 @@ from pyscf.scf import rohf
 from scission.records.store import Record, Store
 from scission.solution import Solution
 
-from .amplitudes import Amplitudes, amplitudes_of, recall, remember
+from .amplitudes import Amplitudes, amplitudes_of, fingerprint, recall, remember
 from .molecule import build_mole
 from .solutions import solution_of_field
 
@@ -164,5 +164,6 @@ def _complete(solution: Solution, solver: Any, triples: float | None) -> None:
     solution.converged = bool(solver.converged)
     if not solution.converged:
         return
+    solution.extra["amplitude_orbitals"] = fingerprint(solver)
     solution.t1 = tuple(np.asarray(t) for t in solver.t1) if isinstance(solver.t1, tuple) else (np.asarray(solver.t1),)
     solution.t2 = tuple(np.asarray(t) for t in solver.t2) if isinstance(solver.t2, tuple) else (np.asarray(solver.t2),)

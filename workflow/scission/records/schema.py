@@ -94,6 +94,13 @@ ARRAYS = (
     Field(
         "active", "i8", "1", ("part",), "inactive orbitals, active orbitals and active electrons of a CASSCF"
     ),
+    Field(
+        "amplitude_orbitals",
+        "f8",
+        "1",
+        ("rank", "ao"),
+        "leading natural orbitals that coupled-cluster amplitudes excite into, scaled by the root of their occupation",
+    ),
     Field("ci", "f8", "1", ("state", "alpha_string", "beta_string"), "CI vectors of the active space"),
     Field(
         "transfer_weights",
