@@ -33,7 +33,8 @@ def walk_chain(chain: dict[str, Any], store: Store, run: Run) -> dict[str, Any]:
     Args:
         chain: molecule, spec, bonds, fragments, nodes (key, coordinate in angstrom, positions in bohr,
             auxiliary), start and stretched as in :class:`scission.plan.Chain`; ``again`` lists keys whose
-            calculation was asked for again.
+            calculation was asked for again; ``phase`` is ``whole``, or ``spine`` or ``block`` for a part of
+            a long chain that another job completes.
         store: where the records lie.
         run: runs one task and returns its summary; a task that fails leaves a failed record.
 
@@ -43,10 +44,13 @@ def walk_chain(chain: dict[str, Any], store: Store, run: Run) -> dict[str, Any]:
     state = ChainState(chain, store, run)
     if chain["spec"]["reference"] in PICTURES:
         return _evaluate(state)
+    phase = chain.get("phase", "whole")
     if chain["spec"]["follow"] == "lowest":
-        take_lowest(state)
+        take_lowest(state, careful=phase != "block")
     else:
         follow_from_anchor(state)
+    if phase != "whole":
+        return {"name": chain["name"], "keys": [], "crossings": [], "lowered": {}}
     crossings = reconcile(state)
     state.label()
     state.finish()
