@@ -58,7 +58,7 @@ def fingerprint(solver: Any) -> Array:
 
     The virtual density sum_ijb t_ij^ab t_ij^cb + sum_i t_i^a t_i^c does not depend on phases or rotations of
     orbitals; each row is an eigenvector in the Loewdin basis, scaled by the root of its occupation, so that
-    two geometries can be compared by :func:`scission.chemistry.compare.fingerprint_overlap`.
+    two geometries can be compared (:mod:`scission.analysis.amplitudes`).
     """
     _, virtual = _orbitals(solver)
     t1, t2 = (solver.t1, solver.t2) if len(virtual) > 1 else ((solver.t1,), (solver.t2,))

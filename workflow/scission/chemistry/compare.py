@@ -26,20 +26,6 @@ def overlap_and_swap(a: Record, b: Record) -> tuple[float, bool]:
     return state_overlap_any_spin(first, second)
 
 
-def fingerprint_overlap(a: np.ndarray, b: np.ndarray) -> float:
-    """Return how alike the virtual densities of two sets of amplitudes are, 0 to 1.
-
-    ``a`` and ``b`` are (rank, n_ao) rows scaled by the roots of occupations, so that a density is a^T a; the
-    result is tr(AB) / sqrt(tr(AA) tr(BB)).
-    """
-
-    def product(x: np.ndarray, y: np.ndarray) -> float:
-        return float(np.sum((x @ y.T) ** 2))
-
-    norm = np.sqrt(product(a, a) * product(b, b))
-    return product(a, b) / norm if norm > 0 else 1.0
-
-
 def _active_overlap(a: Record, b: Record) -> float:
     (core_a, active_a), (core_b, active_b) = _spaces(a), _spaces(b)
     return min(subspace_overlap(active_a, active_b), subspace_overlap(core_a, core_b))

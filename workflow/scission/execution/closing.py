@@ -8,6 +8,7 @@ from pathlib import Path
 from typing import Any
 
 from scission.analysis import Analysis, analyse
+from scission.analysis.amplitudes import amplitude_steps
 from scission.campaign import load_campaign
 from scission.diagnostics import DIAGNOSTICS
 from scission.execution.layout import Layout, read_json
@@ -65,9 +66,11 @@ def _analysed(campaign_file: Path, folder: Path) -> tuple[tuple[Point, ...], Ana
     index = read_json(Layout(folder).plan / "plan.json") or {}
     facts: dict[str, Any] = {name: index[name] for name in ("physics_version", "digest") if name in index}
     jobs = [entry["job"] for entry in index.get("jobs", [])]
-    return points, analyse(
-        points, campaign, Store(folder), facts, next_remedy, crossings(points, folder, jobs)
-    )
+    store = Store(folder)
+    told = crossings(points, folder, jobs)
+    for group, steps in amplitude_steps(points, store).items():
+        told[group] = told.get(group, []) + steps
+    return points, analyse(points, campaign, store, facts, next_remedy, told)
 
 
 def crossings(
