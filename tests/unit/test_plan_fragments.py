@@ -89,3 +89,9 @@ def test_high_spins_get_fragments_of_high_spin(tmp_path):
     found = splits(tmp_path, "radical", "ucc", ("molecules/hydroxyl/multiplicity", 6))
 
     assert any({s.multiplicity for s in split.states} == {5, 2} for split in found)
+
+
+def test_small_groups_may_be_quartets():
+    """CH: doublet and quartet lie close (0.74 eV; Huber and Herzberg, from memory); methyl has no such state."""
+    assert unpaired_options(["C", "H"], 0) == [1, 3]
+    assert unpaired_options(["C", "H", "H", "H"], 0) == [1]

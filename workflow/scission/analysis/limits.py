@@ -185,6 +185,8 @@ def _judge(result: LevelResult, at: int, difference: float, sums: Sums, spin: fl
     if closed and level.correlation == "none":
         return _ionic(result, at, difference, sums)
     words = f"ends {kcal:.1f} kcal/mol above {sums.neutral_words}"
+    if level.reference == "PAIR":
+        return "wrong limit", f"{words}: a covalent pair function leaves one electron on each atom"
     if closed:
         return (
             "wrong limit",

@@ -23,6 +23,9 @@ from .molecule import build_mole, root_overlap
 
 Array = NDArray[np.float64]
 
+_ONE_SIDE = 0.75
+"""Two orbitals with populations beyond this, or both below what is left of one, lie on one fragment."""
+
 _WEIGHTS = ("covalent", "ionic_first", "ionic_second")
 
 
@@ -170,11 +173,13 @@ def pair_picture(pair: Array, parts: Partition) -> BondPicture:
 def localise(orbitals: Array, parts: Partition) -> tuple[Array, int]:
     """Return the orbitals turned to lie on one fragment each, the first one's leading, and how many it has.
 
-    They diagonalise the population (Loewdin, J. Chem. Phys. 18, 365 (1950)) on the first fragment.  Two
-    orbitals are one for each fragment; of more, the first has as many as its population of them rounds to.
+    They diagonalise the population (Loewdin, J. Chem. Phys. 18, 365 (1950)) on the first fragment, which has
+    as many of them as that rounds to; two orbitals are one for each fragment unless both clearly lie on one.
     """
     values, vectors = np.linalg.eigh(orbitals[parts.first].T @ orbitals[parts.first])
-    n_first = 1 if len(values) == 2 else round(float(values.sum()))
+    n_first = round(float(values.sum()))
+    if len(values) == 2 and values[0] < _ONE_SIDE and values[1] > 1.0 - _ONE_SIDE:
+        n_first = 1
     return orbitals @ vectors[:, ::-1], n_first
 
 

@@ -6,6 +6,7 @@ A fragment's key covers its own geometry, charge, multiplicity and method, so th
 
 from __future__ import annotations
 
+from collections import defaultdict
 from collections.abc import Sequence
 from dataclasses import dataclass
 from itertools import product
@@ -31,6 +32,7 @@ _SHELLS = ((2, 10, 2), (10, 18, 10), (18, 20, 18), (28, 36, 28), (36, 38, 36), (
 """Electrons of atoms without open d shells: above, up to, and how many of them are core."""
 
 _MOST_OPEN = 6
+_SMALL_GROUP = 3
 
 
 @dataclass(frozen=True)
@@ -58,13 +60,15 @@ def fragment_work(campaign: Campaign, points: Sequence[Point]) -> list[dict[str,
     Those of an active space take their share of it from a reference of the scan, the farthest that succeeds.
     """
     work: dict[str, dict[str, Any]] = {}
+    references: dict[tuple[str, str], list[str]] = defaultdict(list)
+    for point in points:
+        references[point.scan, point.level].append(point.reference_key)
     for scan_name, scan in campaign.scans.items():
         molecule = campaign.molecules[scan.molecule]
         path = build_path(molecule, scan)
         for name in scan.levels:
             level = campaign.levels[name]
-            own = [p.reference_key for p in points if (p.scan, p.level) == (scan_name, name)]
-            shares = {"share_from": own[::-1]} if level.reference == "CASSCF" else {}
+            shares = {"share_from": references[scan_name, name][::-1]} if level.reference == "CASSCF" else {}
             for split in fragment_splits(molecule, level, path):
                 for state in split.states:
                     work.setdefault(state.key, {**state.work, **shares, "scan": scan_name, "level": name})
@@ -96,13 +100,14 @@ def unpaired_options(symbols: Sequence[str], charge: int) -> list[int]:
     """Return the numbers of unpaired electrons worth trying for a fragment by itself.
 
     For atoms those of its open s or p shell down to pairs (up to six with open d shells), for groups a
-    singlet and a triplet, or a doublet.
+    singlet and a triplet, or a doublet and, of few atoms, a quartet (CH and its like have low-lying ones).
     """
     electrons = sum(ELEMENTS[s] for s in symbols) - charge
     if electrons < 0:
         return []
     if len(symbols) > 1:
-        return [0, 2] if electrons % 2 == 0 else [1]
+        small = len(symbols) <= _SMALL_GROUP
+        return [0, 2] if electrons % 2 == 0 else [1, 3] if small else [1]
     most = _most_unpaired(ELEMENTS[symbols[0]], electrons)
     return list(range(electrons % 2, most + 1, 2))
 
@@ -128,6 +133,11 @@ def _coupled(
     symbols = [[molecule.symbols[a] for a in f] for f in fragments]
     a, b = (unpaired_options(s, q) for s, q in zip(symbols, charges, strict=True))
     pairs = [(m, n) for m, n in product(a, b) if couples(m, n, wanted)]
+    if wanted > 0:  # the spin of a larger group may be high where the molecule's is
+        a, b = (
+            [*o, 3] if o == [1] and len(s) > _SMALL_GROUP else o for o, s in zip((a, b), symbols, strict=True)
+        )
+        pairs = [(m, n) for m, n in product(a, b) if couples(m, n, wanted)]
     if not pairs and a and b:
         more = [range(options[0], wanted + 2, 2) for options in (a, b)]
         pairs = [(m, n) for m, n in product(*more) if m + n == wanted]
