@@ -42,6 +42,7 @@ class ChainState:
         self._again = set(chain.get("again", ()))
         self._touched: set[str] = set()
         self._before: dict[str, float] = {}
+        self._proven: dict[str, float] = {}
         self.notes: dict[str, dict[str, str]] = {}
         self.nodes = [
             Node(n["key"], n["coordinate"], np.array(n["positions"]), n["auxiliary"]) for n in chain["nodes"]
@@ -59,6 +60,11 @@ class ChainState:
     def unrestricted(self) -> bool:
         """Whether the reference has different orbitals for different spins."""
         return self.chain["spec"]["reference"] in ("UHF", "UKS")
+
+    @property
+    def kohn_sham(self) -> bool:
+        """Whether the reference is a Kohn-Sham determinant."""
+        return bool(self.chain["spec"].get("functional"))
 
     @property
     def active(self) -> bool:
@@ -81,6 +87,16 @@ class ChainState:
         """Whether the node has a converged record."""
         record = self.record(node)
         return record is not None and record.status == "converged"
+
+    def unproven(self, node: Node) -> bool:
+        """Whether nobody has looked yet for an instability of the solution the node holds."""
+        record = self.record(node)
+        finished = record is not None and bool(record.diagnostics or record.absent)
+        return not finished and abs(self._proven.get(node.key, np.inf) - self.energy(node)) > LOWER
+
+    def prove(self, node: Node) -> None:
+        """Remember that the instabilities of the node's solution have been followed."""
+        self._proven[node.key] = self.energy(node)
 
     def settled(self, node: Node) -> bool:
         """Whether the node needs no first calculation: it has a record and nobody asked for another."""

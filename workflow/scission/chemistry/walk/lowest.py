@@ -27,7 +27,31 @@ def take_lowest(state: ChainState, careful: bool = True) -> None:
     for anchor in anchors:
         if state.good(anchor):
             _walk(state, anchor)
-    _exchange(state)
+    _exchange(state, {n.key for n in state.nodes})
+    for _ in range(ROUNDS):
+        lowered = _follow_instabilities(state)
+        if not lowered:
+            return
+        _exchange(state, lowered)
+
+
+def _follow_instabilities(state: ChainState) -> set[str]:
+    """Follow instabilities of the nodes that still may have one; return the keys of those that got lower.
+
+    Each node is asked once for a solution it holds.  Kohn-Sham determinants, whose stability costs more than
+    all the rest, are asked only next to a change of state, where one family of solutions ends.
+    """
+    rough = {n.key for a, b in state.pairs() if worth_trying(state, a, b) for n in (a, b)}
+    lowered = set()
+    for node in state.nodes:
+        if not state.good(node) or not state.unproven(node) or (state.kohn_sham and node.key not in rough):
+            continue
+        before = state.energy(node)
+        state.solve(node, [{"carry": node.key}], choose="lowest", stability=True, replace="lower")
+        if state.energy(node) < before - LOWER:
+            lowered.add(node.key)
+        state.prove(node)
+    return lowered
 
 
 def _anchors(state: ChainState) -> list[Node]:
@@ -49,9 +73,8 @@ def worth_trying(state: ChainState, parent: Node, node: Node) -> bool:
     return state.overlap(parent, node) < ALIKE
 
 
-def _exchange(state: ChainState) -> None:
-    """Let every node try its neighbours' solutions where they differ, until nothing gets lower."""
-    changed = {n.key for n in state.nodes}
+def _exchange(state: ChainState, changed: set[str]) -> None:
+    """Let nodes try their neighbours' solutions where they differ and one has changed, until nothing gets lower."""
     for _ in range(ROUNDS):
         again: set[str] = set()
         for a, b in state.pairs():
