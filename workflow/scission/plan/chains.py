@@ -16,7 +16,7 @@ from scission.campaign import Molecule, Scan
 from scission.campaign.model import PICTURES
 from scission.geometry import ScanPath, equilibrium_guess_angstrom, path_at
 
-from .identity import canonical, reference_key
+from .identity import canonical, reference_keys
 from .types import Chain, Node
 
 STRETCHED = 2.0
@@ -49,16 +49,9 @@ def build_chain(name: str, molecule: Molecule, scan: Scan, path: ScanPath, spec:
     extra = auxiliary_lengths(grid, equilibrium, need_stretched=spec["reference"] == "CASSCF")
     if spec["reference"] in PICTURES:  # each geometry by itself: nothing is carried
         extra = []
-    nodes = [
-        _node(facts, spec, path.bonds, x, positions, auxiliary=False)
-        for x, positions in zip(grid, path.positions, strict=True)
-    ]
+    nodes = _nodes(facts, spec, path, auxiliary=False)
     if extra:
-        bridge = path_at(molecule, scan, extra)
-        nodes += [
-            _node(facts, spec, path.bonds, x, positions, auxiliary=True)
-            for x, positions in zip(extra, bridge.positions, strict=True)
-        ]
+        nodes += _nodes(facts, spec, path_at(molecule, scan, extra), auxiliary=True)
     chain = Chain(name, facts, spec, path.bonds, path.fragments, tuple(nodes), 0, 0)
     return _ordered(chain, equilibrium)
 
@@ -88,23 +81,25 @@ def merge_chains(chains: Iterable[Chain]) -> list[Chain]:
 
     A grid point takes the place of an auxiliary node of the same key.
     """
-    merged: dict[str, Chain] = {}
+    groups: dict[str, list[Chain]] = {}
     for chain in chains:
         identity = canonical([chain.molecule, chain.spec, chain.bonds, chain.fragments])
-        if identity not in merged:
-            merged[identity] = chain
-            continue
-        known = merged[identity]
-        nodes = {n.key: n for n in (*known.nodes, *chain.nodes) if n.auxiliary}
-        nodes |= {n.key: n for n in (*known.nodes, *chain.nodes) if not n.auxiliary}
-        equilibrium = known.nodes[known.start].coordinate
-        together = replace(known, name=f"{known.name}+{chain.name}", nodes=tuple(nodes.values()))
-        merged[identity] = _ordered(together, equilibrium)
-    return list(merged.values())
+        groups.setdefault(identity, []).append(chain)
+    return [_merged(group) if len(group) > 1 else group[0] for group in groups.values()]
 
 
-def _node(facts: dict[str, Any], spec: dict[str, Any], bonds: Any, x: float, positions: Any, auxiliary: bool) -> Node:
-    return Node(reference_key(facts, spec, bonds, positions), x, positions, auxiliary)
+def _merged(group: Sequence[Chain]) -> Chain:
+    first = group[0]
+    nodes = {n.key: n for chain in group for n in chain.nodes if n.auxiliary}
+    nodes |= {n.key: n for chain in group for n in chain.nodes if not n.auxiliary}
+    together = replace(first, name="+".join(chain.name for chain in group), nodes=tuple(nodes.values()))
+    return _ordered(together, first.nodes[first.start].coordinate)
+
+
+def _nodes(facts: dict[str, Any], spec: dict[str, Any], path: ScanPath, auxiliary: bool) -> list[Node]:
+    keys = reference_keys(facts, spec, path.bonds, path.positions)
+    lengths = path.values[:, 0].tolist()
+    return [Node(*item, auxiliary) for item in zip(keys, lengths, path.positions, strict=True)]
 
 
 def _ordered(chain: Chain, equilibrium: float) -> Chain:

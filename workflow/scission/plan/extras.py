@@ -31,6 +31,8 @@ def add_extras(
         points: points of one scan at all its levels.
         work: what computes each point, in the same order.
     """
+    if not campaign.diagnostics.include:
+        return list(points), []
     extras: list[dict[str, str]] = [{} for _ in points]
     items: dict[str, dict[str, Any]] = {}
     for calculation in calculations_for(campaign.diagnostics.include):

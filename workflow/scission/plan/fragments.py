@@ -130,7 +130,8 @@ def _coupled(
 
     Where none of the usual ones do, the molecule's spin is high, and fragments of higher spin are tried.
     """
-    symbols = [[molecule.symbols[a] for a in f] for f in fragments]
+    known = molecule.symbols
+    symbols = [[known[a] for a in f] for f in fragments]
     a, b = (unpaired_options(s, q) for s, q in zip(symbols, charges, strict=True))
     pairs = [(m, n) for m, n in product(a, b) if couples(m, n, wanted)]
     if wanted > 0:  # the spin of a larger group may be high where the molecule's is
@@ -152,8 +153,8 @@ def couples(a: int, b: int, wanted: int) -> bool:
 def _state(
     molecule: Molecule, level: Level, path: ScanPath, which: int, charge: int, unpaired: int
 ) -> FragmentState:
-    atoms = list(path.fragments[which])
-    symbols = [molecule.symbols[a] for a in atoms]
+    atoms, known = list(path.fragments[which]), molecule.symbols
+    symbols = [known[a] for a in atoms]
     facts = {"symbols": symbols, "charge": charge, "multiplicity": unpaired + 1}
     positions = _by_itself(path.positions[-1][atoms])
     spec = fragment_spec(level, symbols, unpaired)

@@ -50,22 +50,39 @@ def reference_spec(level: Level, molecule: Molecule) -> dict[str, Any]:
 def reference_key(
     molecule: dict[str, Any], spec: dict[str, Any], bonds: Sequence[Sequence[int]], positions: NDArray[np.float64]
 ) -> str:
-    """Return the key of a reference wavefunction at ``positions`` ((n_atoms, 3), bohr).
+    """Return the key of a reference wavefunction at ``positions`` ((n_atoms, 3), bohr)."""
+    return reference_keys(molecule, spec, bonds, np.asarray(positions)[None])[0]
+
+
+def reference_keys(
+    molecule: dict[str, Any], spec: dict[str, Any], bonds: Sequence[Sequence[int]], positions: NDArray[np.float64]
+) -> list[str]:
+    """Return the keys of a reference wavefunction at several geometries ((n_points, n_atoms, 3), bohr).
 
     The stretched bonds count only where they decide the active space.
     """
     choice = [list(b) for b in bonds] if "active_space" in spec else None
-    head = canonical([PHYSICS_VERSION, "reference", molecule, spec, choice])
-    return digest(head.encode() + geometry_bytes(positions))
+    head = canonical([PHYSICS_VERSION, "reference", molecule, spec, choice]).encode()
+    return [digest(head + geometry.tobytes()) for geometry in _rounded(positions)]
 
 
 def point_key(reference: str, correlation: str, frozen_core: bool) -> str:
     """Return the key of a point: its reference's key and what is done on top."""
+    return point_keys([reference], correlation, frozen_core)[0]
+
+
+def point_keys(references: Sequence[str], correlation: str, frozen_core: bool) -> list[str]:
+    """Return the keys of points on several references, in their order."""
     frozen = frozen_core if correlation not in ("none", "NEVPT2") else None
-    return digest(canonical([PHYSICS_VERSION, "point", reference, correlation, frozen]))
+    before, after = canonical([PHYSICS_VERSION, "point", "@", correlation, frozen]).split("@")
+    return [digest(f"{before}{reference}{after}") for reference in references]
 
 
 def geometry_bytes(positions: NDArray[np.float64]) -> bytes:
     """Return positions (bohr), rounded, as the bytes that go into a key."""
+    return _rounded(positions).tobytes()
+
+
+def _rounded(positions: NDArray[np.float64]) -> NDArray[np.float64]:
     rounded = np.round(positions, _ROUNDING_DECIMALS) + 0.0  # adding zero turns -0.0 into 0.0
-    return rounded.astype("<f8").tobytes()
+    return rounded.astype("<f8")

@@ -15,7 +15,7 @@ from scission.physics import PHYSICS_VERSION
 from .chains import build_chain, merge_chains, molecule_facts
 from .extras import add_extras
 from .fragments import fragment_work
-from .identity import canonical, digest, point_key, reference_key, reference_spec
+from .identity import canonical, digest, point_keys, reference_keys, reference_spec
 from .stages import FEWEST_NODES, cut
 from .types import Chain, Job, Plan, Point
 from .write import campaign_digest
@@ -59,28 +59,29 @@ def _expand_scan(
     """Return the points of a scan and the description of each point's calculation."""
     molecule = campaign.molecules[scan.molecule]
     facts, fragments = molecule_facts(molecule), [list(f) for f in path.fragments]
+    coordinates = [tuple(row) for row in path.values.tolist()]
+    positions = path.positions.tolist()  # one list a geometry, shared by all levels
     points, work = [], []
     for level_name in scan.levels:
         level = campaign.levels[level_name]
         spec = reference_spec(level, molecule)
-        for i, (value, positions) in enumerate(zip(path.values, path.positions, strict=True)):
-            reference = reference_key(facts, spec, path.bonds, positions)
-            key = point_key(reference, level.correlation, level.correlates_valence_only)
-            coordinate = tuple(float(v) for v in value)
-            points.append(Point(name, level_name, i + 1, coordinate, path.names, key, reference))
-            work.append(_describe(level, facts, spec, points[-1], positions) | {"fragments": fragments})
+        references = reference_keys(facts, spec, path.bonds, path.positions)
+        keys = point_keys(references, level.correlation, level.correlates_valence_only)
+        for i, (key, reference) in enumerate(zip(keys, references, strict=True)):
+            points.append(Point(name, level_name, i + 1, coordinates[i], path.names, key, reference))
+            work.append(_describe(level, facts, spec, points[-1], positions[i]) | {"fragments": fragments})
         if level.correlation in _CARRIES_AMPLITUDES:
-            _add_neighbours(work[-len(path.values) :], equilibrium_guess_angstrom(molecule, scan))
+            _add_neighbours(work[-len(keys) :], equilibrium_guess_angstrom(molecule, scan))
     return points, work
 
 
 def _add_neighbours(items: list[dict[str, Any]], equilibrium: float) -> None:
     """Tell each point of a level which points lead to it from the equilibrium, nearest first."""
     middle = min(range(len(items)), key=lambda i: abs(items[i]["coordinate"][0] - equilibrium))
+    told = [{k: item[k] for k in ("reference_key", "positions")} for item in items]
     for i, item in enumerate(items):
         inward = range(i - 1, middle - 1, -1) if i > middle else range(i + 1, middle + 1)
-        chosen = [items[j] for j in inward][:_NEIGHBOURS]
-        item["neighbours"] = [{k: n[k] for k in ("reference_key", "positions")} for n in chosen]
+        item["neighbours"] = [told[j] for j in inward[:_NEIGHBOURS]]
 
 
 def _describe(level: Level, facts: dict[str, Any], spec: dict[str, Any], point: Point, positions: Any) -> dict[str, Any]:
@@ -93,7 +94,7 @@ def _describe(level: Level, facts: dict[str, Any], spec: dict[str, Any], point: 
         "number": point.number,
         "coordinate": list(point.coordinate),
         "molecule": facts,
-        "positions": positions.tolist(),
+        "positions": positions,
         "spec": spec,
         "correlation": level.correlation,
         "frozen_core": level.correlates_valence_only,
@@ -192,10 +193,27 @@ def _job(
     stage: str, name: str, needs: tuple[str, ...], payload: dict[str, Any], n: int, seconds: float, memory: float
 ) -> Job:
     """Return a job whose name follows from its content, with room over its forecast time and memory."""
-    fingerprint = digest(canonical(payload))[:10]
+    fingerprint = digest(canonical(_without_positions(payload)))[:10]
     runtime = math.ceil(10 + forecast.MARGIN * seconds / 60.0)
     label = name.split("+")[0]
     return Job(f"{stage}.{label}.{fingerprint}", stage, needs, n, math.ceil(memory), runtime, payload)
+
+
+def _without_positions(payload: dict[str, Any]) -> dict[str, Any]:
+    """Return what names a job: keys cover geometries, and writing out all numbers would take long."""
+    return {
+        name: [_lean(item) for item in content] if name in ("points", "publish", "chains") else content
+        for name, content in payload.items()
+    }
+
+
+def _lean(item: dict[str, Any]) -> dict[str, Any]:
+    lean = {k: v for k, v in item.items() if k != "positions"}
+    if "neighbours" in lean:
+        lean["neighbours"] = [n["reference_key"] for n in lean["neighbours"]]
+    if "nodes" in lean:
+        lean["nodes"] = [[n["key"], n["coordinate"], n["auxiliary"]] for n in lean["nodes"]]
+    return lean
 
 
 def _chain_payload(chain: Chain) -> dict[str, Any]:
@@ -216,18 +234,16 @@ def _chain_payload(chain: Chain) -> dict[str, Any]:
 
 def _sharing(chains: Sequence[Chain]) -> list[list[Chain]]:
     """Group chains that share a node, directly or through others."""
-    groups: list[tuple[set[str], list[Chain]]] = []
-    for chain in chains:
-        keys, members = {n.key for n in chain.nodes}, [chain]
-        apart = []
-        for other_keys, other in groups:
-            if keys & other_keys:
-                keys |= other_keys
-                members = other + members
-            else:
-                apart.append((other_keys, other))
-        groups = [*apart, (keys, members)]
-    return [members for _, members in groups]
+    groups: dict[int, list[Chain]] = {}
+    group_of: dict[str, int] = {}
+    for number, chain in enumerate(chains):
+        keys = [node.key for node in chain.nodes]
+        members = [chain]
+        for other in sorted({group_of[key] for key in keys if key in group_of}):
+            members = groups.pop(other) + members
+        groups[number] = members
+        group_of.update((node.key, number) for member in members for node in member.nodes)
+    return list(groups.values())
 
 
 def _unique(items: Iterable[dict[str, Any]]) -> list[dict[str, Any]]:
