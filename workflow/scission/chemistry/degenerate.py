@@ -36,9 +36,9 @@ def settle_degenerate(mole: gto.Mole, energies: Array, coeff: Array, occ: Array)
     return settled
 
 
-def _blocks(energies: Array, occ: Array) -> list[Array]:
+def _blocks(energies: Array, occ: Array) -> list[NDArray[np.intp]]:
     """Return the indices of each degenerate set of two or more orbitals."""
-    blocks = []
+    blocks: list[NDArray[np.intp]] = []
     for value in np.unique(occ):
         same = np.flatnonzero(occ == value)
         ordered = same[np.argsort(energies[same], kind="stable")]

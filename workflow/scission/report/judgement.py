@@ -93,13 +93,12 @@ def draw_scorecard(scorecard: pd.DataFrame) -> Figure:
         figure = blank(_WIDTH, height)
         box = (_LEFT / _WIDTH, _FOOT / height, 1 - (_LEFT + _RIGHT) / _WIDTH, 1 - (_HEAD + _FOOT) / height)
         axes = figure.add_axes(box)
-        for at, row in enumerate(table.itertuples()):
-            look = levels[str(row.level)]
-            axes.plot(
-                [row.earliest_angstrom, row.latest_angstrom], [at, at], color=look.colour, linewidth=1.4
-            )
-            axes.plot(row.late_angstrom, at, look.marker, color=look.colour, markersize=5)
-            words = f"{row.level}: {row.hits} / {row.misses} / {row.false_alarms}"
+        for at, row in enumerate(table.to_dict("records")):
+            look = levels[row["level"]]
+            ends = [row["earliest_angstrom"], row["latest_angstrom"]]
+            axes.plot(ends, [at, at], color=look.colour, linewidth=1.4)
+            axes.plot([row["late_angstrom"]], [at], look.marker, color=look.colour, markersize=5)
+            words = f"{row['level']}: {row['hits']} / {row['misses']} / {row['false_alarms']}"
             axes.text(1.02, at, words, transform=axes.get_yaxis_transform(), va="center", fontsize=8)
         axes.axvline(0.0, color=INK, linewidth=0.8)
         axes.set_yticks(range(len(table)), [LABELS.get(name, name) for name in table.diagnostic])

@@ -112,25 +112,33 @@ def _edge(
     """Walk from the minimum point by point until the error leaves the tolerance or a result is missing."""
     way = places[places > minimum] if outward else places[places < minimum][::-1]
     before = minimum
-    for place in way:
-        missing = gaps[(gaps > min(before, place)) & (gaps < max(before, place))]
-        if missing.size:
-            side = float(missing.min() if outward else missing.max())
-            note = f"within the tolerance to the last point before {side:.4g}, which has no result"
-            return Edge(before, *sorted((before, side)), True, note)
-        if abs(float(curve(place))) > tolerance:
-            root = _root(curve, before, float(place), tolerance)
-            sense = "above" if float(curve(place)) > 0.0 else "below"
-            return Edge(
-                root, *sorted((before, float(place))), False, f"beyond it the level lies too far {sense}"
-            )
-        before = float(place)
-    beyond = gaps[gaps > before] if outward else gaps[gaps < before]
-    if beyond.size:
-        side = float(beyond.min() if outward else beyond.max())
-        note = f"within the tolerance to the last point before {side:.4g}, which has no result"
-        return Edge(before, *sorted((before, side)), True, note)
+    for place in map(float, way):
+        blank = _first_gap(gaps, before, place, outward)
+        if blank is not None:
+            return _open(before, blank)
+        value = float(curve(place))
+        if abs(value) > tolerance:
+            sense = "above" if value > 0.0 else "below"
+            low, high = min(before, place), max(before, place)
+            note = f"beyond it the level lies too far {sense}"
+            return Edge(_root(curve, before, place, tolerance), low, high, False, note)
+        before = place
+    blank = _first_gap(gaps, before, np.inf if outward else -np.inf, outward)
+    if blank is not None:
+        return _open(before, blank)
     return Edge(before, before, before, True, TO_THE_END if outward else FROM_THE_START)
+
+
+def _first_gap(gaps: FloatArray, start: float, end: float, outward: bool) -> float | None:
+    """The first length without a result on the way from ``start`` to ``end``."""
+    between = gaps[(gaps > min(start, end)) & (gaps < max(start, end))]
+    return None if not between.size else float(between.min() if outward else between.max())
+
+
+def _open(last: float, blank: float) -> Edge:
+    """An end where trust stops because a result is missing."""
+    note = f"within the tolerance to the last point before {blank:.4g}, which has no result"
+    return Edge(last, min(last, blank), max(last, blank), True, note)
 
 
 def _root(curve: PchipInterpolator, good: float, bad: float, tolerance: float) -> float:
