@@ -56,16 +56,18 @@ def campaign_text(scans: int) -> str:
 
 def timed(what: str, call: Callable[[], Any]) -> Any:
     """Call, and print what it took."""
-    started = time.perf_counter()
+    started, used = time.perf_counter(), time.process_time()
     result = call()
     peak = resource.getrusage(resource.RUSAGE_SELF).ru_maxrss / 1e3
-    print(f"{what:10s} {time.perf_counter() - started:6.1f} s   peak so far {peak:6.0f} MB", flush=True)
+    wall, cpu = time.perf_counter() - started, time.process_time() - used
+    print(f"{what:10s} {wall:6.1f} s ({cpu:.1f} s of processor)   peak so far {peak:6.0f} MB", flush=True)
     return result
 
 
 def measure(scans: int) -> None:
     """Read, expand and forecast one campaign."""
     from scission.campaign import load_campaign
+    from scission.forecast import estimate
     from scission.plan import make_plan
 
     with tempfile.TemporaryDirectory() as folder:
@@ -73,7 +75,9 @@ def measure(scans: int) -> None:
         path.write_text(campaign_text(scans), encoding="utf-8")
         campaign = timed("read", lambda: load_campaign(path))
         plan = timed("plan", lambda: make_plan(campaign))
-    print(f"{len(plan.points)} points, {len(plan.jobs)} jobs")
+        forecast = timed("forecast", lambda: estimate(plan))
+        timed("finish", lambda: forecast.finish_s(200))
+    print(f"{len(plan.points)} points, {len(plan.jobs)} jobs, {forecast.total.core_s / 3600:.0f} core hours")
 
 
 def main() -> None:

@@ -11,8 +11,13 @@ from __future__ import annotations
 import argparse
 from collections.abc import Sequence
 from pathlib import Path
+from typing import TYPE_CHECKING
 
 from scission.cli.common import DEMO, WRONG_INPUT, WrongInputError, read_campaign, results_folder, tell
+from scission.cli.limits import add_limits, within_core_hours, within_points
+
+if TYPE_CHECKING:
+    from scission.campaign import Campaign
 
 SUMMARY = "run a campaign, or go on with one"
 EXAMPLE = "scission run config/demo.yaml --cores 2"
@@ -23,6 +28,7 @@ def add_arguments(parser: argparse.ArgumentParser) -> None:
     """Declare the options; the campaign itself is taken from what argparse leaves over."""
     parser.usage = "scission run [CAMPAIGN.yaml] [options] [options of the workflow engine]"
     add_run_options(parser)
+    add_limits(parser)
 
 
 def add_run_options(parser: argparse.ArgumentParser) -> None:
@@ -40,11 +46,27 @@ def main(args: argparse.Namespace, rest: Sequence[str]) -> int:
 
     try:
         path, extra = split_campaign(rest)
-        campaign = read_campaign(path)
-        return run_campaign(path.absolute(), campaign.name, results_folder(args.results), args, extra)
+        campaign, results = read_campaign(path), results_folder(args.results)
+        _within_limits(campaign, results, args)
+        return run_campaign(path.absolute(), campaign.name, results, args, extra)
     except WrongInputError as error:
         tell(str(error))
         return WRONG_INPUT
+
+
+def _within_limits(campaign: Campaign, results: Path, args: argparse.Namespace) -> None:
+    """Refuse a campaign that is too large; one that has been started is not forecast again.
+
+    Raises:
+        WrongInputError: says which limit, and how to raise it.
+    """
+    from scission.cli.check import learnt
+    from scission.execution.planning import expand
+    from scission.forecast import estimate
+
+    within_points(campaign, args)
+    if not (results / campaign.name / "plan" / "plan.json").is_file():
+        within_core_hours(estimate(expand(campaign, {}), learnt(results)), args)
 
 
 def split_campaign(rest: Sequence[str]) -> tuple[Path, list[str]]:

@@ -7,6 +7,7 @@ from collections.abc import Sequence
 from pathlib import Path
 
 from scission.cli.common import WRONG_INPUT, WrongInputError, find_layout, results_folder, tell
+from scission.cli.table import table
 
 SUMMARY = "show how far a campaign is"
 EXAMPLE = "scission status config/demo.yaml"
@@ -40,15 +41,3 @@ def main(args: argparse.Namespace, rest: Sequence[str]) -> int:  # noqa: ARG001
     running = progress.running()
     print(f"at work: {', '.join(running) if running else 'nothing'}")
     return 0
-
-
-def table(rows: Sequence[tuple[str, ...]]) -> str:
-    """Return rows as columns: the first two to the left, numbers to the right."""
-    widths = [max(len(row[i]) for row in rows) for i in range(len(rows[0]))]
-    lines = []
-    for row in rows:
-        cells = [
-            c.ljust(w) if i < 2 else c.rjust(w) for i, (c, w) in enumerate(zip(row, widths, strict=True))
-        ]
-        lines.append("  ".join(cells).rstrip())
-    return "\n".join(lines)
