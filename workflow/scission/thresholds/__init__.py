@@ -115,5 +115,6 @@ def _overridden(name: str, override: Override) -> Threshold:
         "set by the campaign",
         strong=override.strong,
         strong_source=override.source if override.strong is not None else "",
-        near=override.value + 0.03 if name == "triplet_stability" else None,
+        near=override.value if name == "triplet_stability" else None,
+        doubt=override.value - 0.03 if name == "triplet_stability" else None,
     )

@@ -115,7 +115,7 @@ THRESHOLDS: dict[str, tuple[Threshold, ...]] = {
             "triplet_stability", 0.0, "below", "restricted determinants: lowest eigenvalue, RHF to UHF",
             "definition: below zero an unrestricted determinant lies lower; "
             "Cizek and Paldus, J. Chem. Phys. 47, 3976 (1967)", MEMORY,
-            strong=-0.10, near=0.03,
+            strong=-0.10, near=0.0, doubt=-0.03,
             strong_source=f"{OWN}: stretched H2 and N2 (cc-pVDZ) pass it at a CASSCF LUNO of 0.1 to 0.2",
         ),
     ),

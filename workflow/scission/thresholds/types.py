@@ -21,7 +21,8 @@ class Threshold:
     ``direction`` is the side on which doubt lies; ``spin`` the molecules it applies to.  With
     ``per_spin`` the values are fractions of S(S+1).  ``strong_source`` belongs to ``strong``.  Where ``near``
     is not given it lies a fifth of the value before it; where ``strong`` is not, five times as far beyond as
-    ``near`` lies before (both this project's choice, as is every ``near``).
+    ``near`` lies before (both this project's choice, as is every ``near``).  ``doubt`` is for a threshold
+    that is crossed before there is reason to doubt: the stability of a determinant.
     """
 
     name: str
@@ -35,6 +36,7 @@ class Threshold:
     strong_source: str = ""
     per_spin: bool = False
     near: float | None = None
+    doubt: float | None = None
 
     def scaled(self, multiplicity: int) -> tuple[float, float | None]:
         """Value and strong value for a spin multiplicity."""
@@ -45,16 +47,18 @@ class Threshold:
         return self.value * factor, None if self.strong is None else self.strong * factor
 
     def steps(self, multiplicity: int) -> tuple[float, float, float]:
-        """Where a value is near, over and strongly over the threshold, for a spin multiplicity."""
+        """Where the grade of a value leaves 0, is 1 and reaches 2, for a spin multiplicity."""
         value, strong = self.scaled(multiplicity)
         sign = 1.0 if self.direction == "above" else -1.0
         near = value - sign * _NEAR * abs(value) if self.near is None else self.near
-        return near, value, value + 5.0 * (value - near) if strong is None else strong
+        doubt = value if self.doubt is None else self.doubt
+        return near, doubt, doubt + 5.0 * (doubt - near) if strong is None else strong
 
     def grade(self, x: float, multiplicity: int) -> float:
         """How far a value speaks against a single reference, 0 to 2.
 
-        Straight lines between 0 (up to ``near``), 1 (at the threshold) and 2 (from ``strong`` on).
+        Straight lines between 0 (up to ``near``), 1 (at the threshold, or at ``doubt``) and 2 (from
+        ``strong`` on).
         """
         near, value, strong = self.steps(multiplicity)
         if self.direction == "below":

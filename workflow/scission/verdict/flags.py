@@ -10,7 +10,7 @@ from collections.abc import Mapping
 from dataclasses import dataclass, field
 from math import isfinite
 
-from scission.thresholds import Thresholds, threshold_for
+from scission.thresholds import Thresholds, is_over, threshold_for
 from scission.thresholds.rule import CLEAR, FAMILIES, LABELS, NEVER_ALONE, RULE, Rule
 
 SINGLE = "single-reference"
@@ -91,7 +91,8 @@ def _sign(
     grade = threshold.grade(value, context.multiplicity)
     bound = threshold.scaled(context.multiplicity)[0]
     sign = ">" if threshold.direction == "above" else "<"
-    relation = f"{sign} {_number(bound)}" if grade > 1.0 else f"near {_number(bound)}"
+    over = is_over(value, bound, threshold.direction)
+    relation = f"{sign} {_number(bound)}" if over else f"near {_number(bound)}"
     remarks = [*(["strong"] if grade >= 2.0 else []), *([f"level {level}"] if level else [])]
     words = f"{LABELS[name]} {_number(value)} {relation}" + (f" ({', '.join(remarks)})" if remarks else "")
     return Sign(name, rule.weight(name), grade, words)
