@@ -1,0 +1,235 @@
+"""The state of a campaign at one moment, from names of records and the small files of jobs; reads only.
+
+No record is opened and nothing is locked, so it may be taken from any shell at any time.
+"""
+
+from __future__ import annotations
+
+import csv
+import heapq
+import json
+import os
+import time
+from collections.abc import Iterator
+from dataclasses import dataclass, field
+from datetime import datetime
+from pathlib import Path
+
+from scission.execution.layout import Layout, read_json
+from scission.execution.markers import live_workers
+
+WINDOW_S = 900.0
+"""Throughput is that of the last so many seconds."""
+
+_SAMPLED = 2000
+"""Times of records are looked up for about so many; keys are digests, so folders are fair samples."""
+
+
+@dataclass
+class Count:
+    """Points of one scan and level: planned, with a good record, at work, without a good result."""
+
+    total: int = 0
+    good: int = 0
+    running: int = 0
+    failed: int = 0
+
+    @property
+    def left(self) -> int:
+        """Points that have no record and are not at work."""
+        return self.total - self.good - self.failed - self.running
+
+    def add(self, other: Count) -> None:
+        """Add the numbers of another count."""
+        self.total += other.total
+        self.good += other.good
+        self.running += other.running
+        self.failed += other.failed
+
+
+@dataclass(frozen=True)
+class AtWork:
+    """One calculation at work: what it is, and for how many seconds."""
+
+    what: str
+    seconds: float
+
+
+@dataclass(frozen=True)
+class Snapshot:
+    """Counts by (scan, level), of the references, jobs and calculations at work, records a second."""
+
+    groups: dict[tuple[str, str], Count]
+    references: Count
+    jobs: list[str]
+    at_work: list[AtWork]
+    per_second: float
+
+    @property
+    def total(self) -> Count:
+        """All points together."""
+        total = Count()
+        for count in self.groups.values():
+            total.add(count)
+        return total
+
+    @property
+    def seconds_left(self) -> float | None:
+        """Time left at the present pace; None while that cannot be told."""
+        left = sum(c.left + c.running for c in (self.total, self.references))
+        return left / self.per_second if left and self.per_second and self.jobs else None
+
+
+Point = tuple[str, str, str]
+"""Scan, level and number."""
+
+
+@dataclass
+class Watcher:
+    """Takes snapshots of one campaign; files that did not change are not read again."""
+
+    layout: Layout
+    _planned: tuple[int, list[tuple[Point, str, str]]] = (0, [])
+    _told: dict[str, tuple[int, frozenset[str]]] = field(default_factory=dict)
+
+    def look(self) -> Snapshot:
+        """Return the present state.
+
+        Raises:
+            FileNotFoundError: the campaign has no plan yet.
+        """
+        plan, bad = self._plan(), self._not_good()
+        points, references = (_keys(self.layout.folder / name) for name in ("records", "references"))
+        jobs = live_workers(self.layout)
+        markers = dict(_markers(self.layout, set(jobs)))
+        groups: dict[tuple[str, str], Count] = {}
+        built_on: set[str] = set()
+        for (scan, level, _), key, reference in plan:
+            _tell(groups.setdefault((scan, level), Count()), key, points, bad, markers)
+            built_on.add(reference)
+        count = Count()
+        for key in built_on:
+            _tell(count, key, references, bad, markers)
+        return Snapshot(groups, count, jobs, _at_work(plan, markers), _pace(self.layout.folder))
+
+    def _plan(self) -> list[tuple[Point, str, str]]:
+        path = self.layout.plan / "points.csv"
+        changed = path.stat().st_mtime_ns
+        if self._planned[0] != changed:
+            with path.open(encoding="utf-8", newline="") as handle:
+                rows = csv.reader(handle)
+                header = next(rows)
+                place = [header.index(n) for n in ("scan", "level", "point", "key", "reference_key")]
+                listed = [[row[i] for i in place] for row in rows]
+            self._planned = changed, [((s, le, n), k, r) for s, le, n, k, r in listed]
+        return self._planned[1]
+
+    def _not_good(self) -> set[str]:
+        """Return the keys of records without a good result, as far as jobs have told."""
+        bad: set[str] = set()
+        for folder in (self.layout.job_done("x").parent, self.layout.worker("x").parent):
+            for entry in _entries(folder, ".json"):
+                bad |= self._told_by(entry)
+        return bad
+
+    def _told_by(self, entry: os.DirEntry[str]) -> frozenset[str]:
+        try:
+            changed = entry.stat().st_mtime_ns
+            kept = self._told.get(entry.path)
+            if kept is None or kept[0] != changed:
+                kept = self._told[entry.path] = changed, _keys_in(Path(entry.path).read_bytes())
+        except FileNotFoundError:  # a worker that has just ended
+            return frozenset()
+        return kept[1]
+
+
+def _keys_in(text: bytes) -> frozenset[str]:
+    if b'"not_good": {}' in text or b'"not_good"' not in text:  # nearly all: spares reading them as JSON
+        return frozenset()
+    try:
+        return frozenset(json.loads(text)["not_good"])
+    except (ValueError, KeyError, TypeError):  # not a job's file; the counts then lack it
+        return frozenset()
+
+
+def _tell(count: Count, key: str, there: set[str], bad: set[str], markers: dict[str, float]) -> None:
+    count.total += 1
+    if key in markers:
+        count.running += 1
+    elif key in there:
+        if key in bad:
+            count.failed += 1
+        else:
+            count.good += 1
+
+
+def _entries(folder: Path, suffix: str) -> Iterator[os.DirEntry[str]]:
+    try:
+        with os.scandir(folder) as entries:
+            yield from (e for e in entries if e.name.endswith(suffix) and not e.name.startswith("."))
+    except (FileNotFoundError, NotADirectoryError):
+        return
+
+
+def _keys(root: Path) -> set[str]:
+    return {e.name[:-4] for group in _entries(root, "") for e in _entries(Path(group.path), ".npz")}
+
+
+def _markers(layout: Layout, jobs: set[str]) -> Iterator[tuple[str, float]]:
+    """Give key and age (s) of every calculation at work; markers of dead workers do not count."""
+    now = time.time()
+    for entry in _entries(layout.running("x").parent, ".json"):
+        marker = read_json(Path(entry.path))
+        if marker is not None and marker.get("job") in jobs:
+            try:
+                started = datetime.fromisoformat(marker["started"]).timestamp()
+            except (KeyError, TypeError, ValueError):
+                started = now
+            yield entry.name.removesuffix(".json"), max(0.0, now - started)
+
+
+def _at_work(plan: list[tuple[Point, str, str]], markers: dict[str, float]) -> list[AtWork]:
+    """Return what is at work, the longest first."""
+    names: dict[str, str] = {}
+    for point, key, reference in plan if markers else ():
+        if reference in markers:
+            names.setdefault(reference, f"reference of {' '.join(point)}")
+        if key in markers:
+            names[key] = " ".join(point)
+    found = [AtWork(names.get(key, key), age) for key, age in markers.items()]
+    return sorted(found, key=lambda item: -item.seconds)
+
+
+def _pace(folder: Path) -> float:
+    """Return the records a second that were written lately."""
+    return sum(_rate(folder / name) for name in ("records", "references"))
+
+
+def _rate(root: Path) -> float:
+    """Return the records a second below one folder, from the times of a fair sample of them."""
+    now, times, looked_at = time.time(), list[float](), 0
+    groups = sorted(entry.path for entry in _entries(root, ""))
+    for group in groups:
+        times += [entry.stat().st_mtime for entry in _entries(Path(group), ".npz")]
+        looked_at += 1
+        if len(times) > _SAMPLED:
+            break
+    if not times:
+        return 0.0
+    window = min(WINDOW_S, max(1.0, now - min(times)))
+    recent = sum(1 for written in times if now - written <= window)
+    return recent / window * len(groups) / looked_at
+
+
+def slowest(table: Path, most: int) -> list[tuple[str, float]]:
+    """Return the points that took longest (s), from the table of points of the latest analysis, if any."""
+    try:
+        with table.open(encoding="utf-8", newline="") as handle:
+            rows = csv.reader(handle)
+            header = next(rows)
+            place = [header.index(name) for name in ("wall_s", "scan", "level", "point")]
+            found = [[row[i] for i in place] for row in rows]
+    except (FileNotFoundError, StopIteration, ValueError, IndexError):  # none yet, or not such a table
+        return []
+    timed = [(" ".join(point), float(wall)) for wall, *point in found if wall]
+    return heapq.nlargest(most, timed, key=lambda item: item[1])
