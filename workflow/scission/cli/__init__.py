@@ -13,9 +13,15 @@ import sys
 from collections.abc import Sequence
 from types import ModuleType
 
-from scission.cli import check, retry, run, status
+from scission.cli import check, retry, run, status, tables
 
-COMMANDS: dict[str, ModuleType] = {"run": run, "check": check, "status": status, "retry": retry}
+COMMANDS: dict[str, ModuleType] = {
+    "run": run,
+    "check": check,
+    "status": status,
+    "retry": retry,
+    "tables": tables,
+}
 
 
 def build_parser() -> argparse.ArgumentParser:
