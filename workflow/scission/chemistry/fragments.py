@@ -24,6 +24,8 @@ Array = NDArray[np.float64]
 
 NEUTRAL_STARTS = 3
 IONIC_STARTS = 2
+_ORIENTATIONS = 9
+_SAME_SCORE = 1e-8
 _WORTH_TRYING = 0.25
 """Splits this far (hartree) above the lowest one, the attraction of charges included, are not tried."""
 _AXIS_CYCLES = tuple(np.roll(np.eye(3), k, axis=0) for k in range(3))
@@ -61,21 +63,23 @@ def fragment_densities(
     """Yield (label, density (2, n_ao, n_ao)) of the most promising splits, neutral ones first.
 
     Atoms whose density is not spherical are tried with each of three orientations to ``axis`` (the bond);
-    the orientation whose energy is lowest in one evaluation is kept, for each split, or with ``axial`` the
-    one whose unpaired electrons lie along the bond.
+    the orientation whose energy is lowest in one evaluation comes first, or with ``axial`` the one whose
+    unpaired electrons lie along the bond.  Of the lowest split all different ones are given: one evaluation
+    does not tell which is lowest (F2: the hole of one atom along, that of the other across the bond).
     """
     mole = build_mole(facts, basis, positions)
     field = uhf.UHF(mole)
-    for split in promising_splits(facts, basis, positions, fragments):
+    for number, split in enumerate(promising_splits(facts, basis, positions, fragments)):
         options = [_orientations(facts, basis, atoms, s, axis) for atoms, s in zip(fragments, split.states, strict=True)]
-        best: tuple[float, Array] | None = None
+        scored: list[tuple[float, Array]] = []
         for choice in product(*options):
             density = _assemble(mole, fragments, choice, split.flipped)
             score = -_spread(mole, density[0] - density[1], axis) if axial else float(field.energy_tot(dm=density))
-            if best is None or score < best[0]:
-                best = score, density
-        if best is not None:
-            yield split.label, best[1]
+            if not any(abs(score - known) < _SAME_SCORE for known, _ in scored):  # equal ones are turned copies
+                scored.append((score, density))
+        scored.sort(key=lambda s: s[0])
+        for _, density in scored[: _ORIENTATIONS if number == 0 else 1]:
+            yield split.label, density
 
 
 def promising_splits(

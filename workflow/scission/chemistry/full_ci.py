@@ -17,6 +17,8 @@ from .solutions import solution_of_field, take_facts
 ENERGY_TOLERANCE = 1e-10
 MAX_CYCLES = 300
 _SPIN_SHIFT = 0.5
+_LONGEST_STRING = 63
+"""Orbitals that the engine's occupation strings hold in one word of 64 bits."""
 
 
 def full_ci(task: dict[str, Any], field: Any, _: Record, frozen: int, __: Store) -> Solution:
@@ -26,10 +28,7 @@ def full_ci(task: dict[str, Any], field: Any, _: Record, frozen: int, __: Store)
     size, electrons = restricted.mo_coeff.shape[1] - frozen, (mole.nelec[0] - frozen, mole.nelec[1] - frozen)
     mc = mcscf.CASCI(restricted, size, electrons)
     mc.canonicalization, mc.verbose = False, 0
-    s = mole.spin / 2.0
-    mc.fcisolver = fci.direct_spin1.FCI(mole)
-    mc.fcisolver.conv_tol, mc.fcisolver.max_cycle = ENERGY_TOLERANCE, MAX_CYCLES
-    mc.fix_spin_(shift=_SPIN_SHIFT, ss=s * (s + 1.0))
+    _choose_solver(mc, mole.spin / 2.0, size, electrons)
     mc.kernel()
     solution = solution_of_field(field, task["spec"], diagnose=False)
     solution.energies["correlation"] = float(mc.e_tot) - solution.energy
@@ -41,11 +40,39 @@ def full_ci(task: dict[str, Any], field: Any, _: Record, frozen: int, __: Store)
     return solution
 
 
+def _choose_solver(mc: Any, spin: float, size: int, electrons: tuple[int, int]) -> None:
+    """Give ``mc`` a solver that stays in the spin asked for.
+
+    The engine's spin penalty works on occupation strings of 63 orbitals at most; a pair of electrons needs no
+    penalty, because a symmetric matrix of coefficients is a singlet.
+
+    Raises:
+        ValueError: more than a pair of electrons in more orbitals than that.
+    """
+    long = size > _LONGEST_STRING
+    if long and electrons != (1, 1):
+        raise ValueError(
+            f"full CI of {sum(electrons)} electrons in {size} orbitals: more than two electrons need "
+            f"{_LONGEST_STRING} orbitals or fewer; take a smaller basis"
+        )
+    mc.fcisolver = fci.direct_spin0.FCI(mc.mol) if long else fci.direct_spin1.FCI(mc.mol)
+    mc.fcisolver.conv_tol, mc.fcisolver.max_cycle = ENERGY_TOLERANCE, MAX_CYCLES
+    if not long:
+        mc.fix_spin_(shift=_SPIN_SHIFT, ss=spin * (spin + 1.0))
+
+
+def _spin_square(vector: Any, size: int, electrons: tuple[int, int]) -> float:
+    """Return <S^2>; of a pair of electrons 1 - tr(CC), 0 for symmetric and 2 for antisymmetric coefficients."""
+    if electrons == (1, 1):
+        return 1.0 - float(np.sum(vector * np.transpose(vector)))
+    return float(fci.spin_op.spin_square0(vector, size, electrons)[0])
+
+
 def _describe(solution: Solution, vector: Any, size: int, electrons: tuple[int, int], frozen: int) -> None:
     """Add natural occupations, what a vector that is not too long says of them, and the spin of the state."""
     take_facts(solution, analyse_vector(vector, size, electrons))
     solution.n_inactive = frozen
-    solution.s2 = float(fci.spin_op.spin_square0(vector, size, electrons)[0])
+    solution.s2 = _spin_square(np.asarray(vector), size, electrons)
 
 
 def _shared_orbitals(field: Any) -> Any:

@@ -30,7 +30,8 @@ def solve_reference(task: dict[str, Any], store: Store) -> tuple[Any, gto.Mole, 
     record whose orbitals are carried here), ``engine`` (one of the engine's own guesses), ``broken`` (along
     the triplet instability of the restricted determinant), ``fragments`` (all splits of the fragments).
     ``task["choose"]`` is ``first`` (the first start that converges, else the lowest) or ``lowest``;
-    ``task["stability"]`` asks to follow internal instabilities of each candidate.
+    ``task["stability"]`` asks to follow internal instabilities of the one that was chosen, and
+    ``task["polish"]`` to turn it along its flattest directions as well.
     """
     mole = build_mole(task["molecule"], task["spec"]["basis"], np.array(task["positions"]))
     best: Any = None
@@ -44,6 +45,8 @@ def solve_reference(task: dict[str, Any], store: Store) -> tuple[Any, gto.Mole, 
         raise RuntimeError("no start was given from which the reference could be computed")
     if task.get("stability") and best.converged:
         best = _stable(best)
+        if task.get("polish"):
+            best = scf.polish(best)
     return best, mole, remark
 
 
@@ -134,16 +137,21 @@ def _split_densities(task: dict[str, Any]) -> Iterator[tuple[str, Any]]:
 
 
 def _stable(field: Any) -> Any:
-    """Follow internal instabilities; of equal alpha and beta orbitals also the one that makes them differ."""
-    field = scf.follow_instability(field)
-    if isinstance(field, scf.uhf.UHF) and field.mol.spin == 0 and abs(field.spin_square()[0]) < 1e-5:
-        closed = scf.closed_shell_twin(field)
-        start = scf.broken_symmetry_start(closed)
-        if start is not None:
-            lower = scf.second_order(field.copy(), start.coeff, start.occ)
-            if lower.converged and lower.e_tot < field.e_tot - _SAME_ENERGY:
-                return scf.follow_instability(lower)
+    """Follow internal instabilities; of equal alpha and beta orbitals those that make them differ."""
+    if not _equal_spins(field):
+        return scf.follow_instability(field)
+    start = scf.broken_symmetry_start(scf.closed_shell_twin(field))
+    if start is None:
+        return field
+    lower = scf.second_order(field.copy(), start.coeff, start.occ)
+    if lower.converged and lower.e_tot < field.e_tot - _SAME_ENERGY:
+        return scf.follow_instability(lower)
     return field
+
+
+def _equal_spins(field: Any) -> bool:
+    """Whether an unrestricted singlet has the same orbitals for both spins: its own analysis is blind there."""
+    return isinstance(field, scf.uhf.UHF) and field.mol.spin == 0 and abs(field.spin_square()[0]) < 1e-5
 
 
 def _spin_density(spec: dict[str, Any], orbitals: Orbitals) -> Any:

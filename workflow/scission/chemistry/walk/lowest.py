@@ -12,7 +12,8 @@ ALIKE = 0.98
 ROUNDS = 8
 """Rounds of exchange between neighbours at most; four were the most ever needed."""
 
-_CAREFUL: list[dict[str, Any]] = [{"engine": "minao"}, {"broken": True}, {"fragments": True}]
+_WHOLE: list[dict[str, Any]] = [{"engine": "minao"}, {"broken": True}]
+"""Starts from the whole molecule; far from the equilibrium the separated fragments come on top."""
 
 
 def take_lowest(state: ChainState, careful: bool = True) -> None:
@@ -23,7 +24,8 @@ def take_lowest(state: ChainState, careful: bool = True) -> None:
     anchors = _anchors(state) if careful else [state.nodes[0], state.nodes[-1]]
     for anchor in anchors:
         if careful and not state.settled(anchor):
-            state.solve(anchor, _CAREFUL, choose="lowest", stability=True)
+            starts = _WHOLE if anchor is state.start else [*_WHOLE, {"fragments": True}]
+            state.solve(anchor, starts, choose="lowest", stability=True, polish=not state.kohn_sham)
     for anchor in anchors:
         if state.good(anchor):
             _walk(state, anchor)
@@ -47,7 +49,7 @@ def _follow_instabilities(state: ChainState) -> set[str]:
         if not state.good(node) or not state.unproven(node) or (state.kohn_sham and node.key not in rough):
             continue
         before = state.energy(node)
-        state.solve(node, [{"carry": node.key}], choose="lowest", stability=True, replace="lower")
+        state.solve(node, [{"carry": node.key}], choose="lowest", replace="lower", stability=True)
         if state.energy(node) < before - LOWER:
             lowered.add(node.key)
         state.prove(node)
