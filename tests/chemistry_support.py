@@ -62,6 +62,7 @@ def task(key, symbols, positions, reference="RHF", basis="cc-pvdz", **more):
         "starts": list(more.get("starts", starts)),
         "choose": "lowest",
         "stability": True,
+        "polish": reference == "UHF",
     }
 
 

@@ -27,7 +27,6 @@ os.environ.setdefault("OMP_NUM_THREADS", "1")
 import numpy as np
 import yaml
 from pyscf import cc, mcscf
-
 from scission.campaign import load_campaign
 from scission.chemistry import scf
 from scission.chemistry.molecule import build_mole, root_overlap
@@ -133,9 +132,13 @@ def carried(plan: Plan, folder: Path) -> tuple[Curve, list[dict[str, Any]]]:
     curve.seconds = time.process_time() - start
     correlated = any(job.stage == "correlate" for job in plan.jobs)
     for point in plan.points:
-        record = store.read("point", point.key) if correlated else store.read("reference", point.reference_key)
+        record = (
+            store.read("point", point.key) if correlated else store.read("reference", point.reference_key)
+        )
         good = record is not None and record.status == "converged"
-        curve.energies.append(float(record.scalars["energy"]) if record is not None and good else float("nan"))
+        curve.energies.append(
+            float(record.scalars["energy"]) if record is not None and good else float("nan")
+        )
         curve.wrong_spin += int(record is not None and record.reason == "spin")
     curve.jumps = _unreported(plan, store, crossings)
     return curve, crossings
@@ -181,7 +184,7 @@ def _single(
     mean = scf.build_field(mole, chain["spec"])
     mean.kernel()
     if chain["spec"]["reference"] == "CASSCF":
-        return _single_active(chain, mole, mean, root)
+        return _single_active(mole, mean, root)
     here = scf.orbitals_of(mean).transformed(root)
     if not correlated:
         return (float(mean.e_tot) if mean.converged else float("nan")), here, _determinants, True
@@ -194,7 +197,7 @@ def _single(
     return (float(solver.e_tot) if good else float("nan")), here, _determinants, True
 
 
-def _single_active(chain: dict[str, Any], mole: Any, mean: Any, root: np.ndarray) -> tuple[Any, ...]:
+def _single_active(mole: Any, mean: Any, root: np.ndarray) -> tuple[Any, ...]:
     n_core, n_active, n_electrons = _sizes
     mc = mcscf.CASSCF(mean, n_active, n_electrons)
     mc.kernel()
@@ -226,7 +229,11 @@ def compare(scan: str, level: str, basis: str) -> str:
         ours, crossings = carried(plan, folder)
         if level == "cas":
             store = Store(folder / "results")
-            first = next(r for p in plan.points if (r := store.read("reference", p.reference_key)) and "active" in r.arrays)
+            first = next(
+                r
+                for p in plan.points
+                if (r := store.read("reference", p.reference_key)) and "active" in r.arrays
+            )
             _sizes = tuple(int(n) for n in first.arrays["active"])  # type: ignore[assignment]
         plain = independent(plan)
     best = np.fmin(np.array(ours.energies), np.array(plain.energies))
@@ -244,7 +251,9 @@ def compare(scan: str, level: str, basis: str) -> str:
 
 def main() -> None:
     """Print the table."""
-    parser = argparse.ArgumentParser(description=__doc__, formatter_class=argparse.RawDescriptionHelpFormatter)
+    parser = argparse.ArgumentParser(
+        description=__doc__, formatter_class=argparse.RawDescriptionHelpFormatter
+    )
     parser.add_argument("--scans", nargs="+", default=list(SCANS), choices=list(SCANS))
     parser.add_argument("--levels", nargs="+", default=list(LEVELS), choices=list(LEVELS))
     parser.add_argument("--basis", default="6-31g*")

@@ -15,7 +15,6 @@ from scission.campaign.names import (
     known,
 )
 
-# ruff: noqa: E501  (the sample is easier to read in full lines)
 SAMPLE = [
     ("cc-pVDZ", "H"), ("cc-pVDZ", "O"), ("CC-PVDZ", "Cl"), ("ccpvtz", "N"), ("aug-cc-pVTZ", "F"), ("6-31G*", "C"),
     ("6-31g(d,p)", "H"), ("6-311++G(2d,2p)", "O"), ("STO-3G", "S"), ("def2-TZVP", "Ca"), ("def2-SVP", "I"),

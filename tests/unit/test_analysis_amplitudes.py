@@ -5,7 +5,6 @@ from types import SimpleNamespace
 
 import numpy as np
 import pytest
-
 from scission.analysis.amplitudes import amplitude_steps, density_overlap
 from scission.records import Record, Store
 

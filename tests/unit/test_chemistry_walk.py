@@ -116,9 +116,6 @@ def test_a_failure_does_not_stop_the_walk(tmp_path):
 
 
 @pytest.mark.slow
-@pytest.mark.xfail(
-    strict=True, reason="the determinant stops 1.6e-8 hartree early, its hole tilted from the axis"
-)
 def test_coupled_cluster_converges_wherever_its_reference_came_from(tmp_path):
     """UCCSD of HF at 4 angstrom does not need the reference to be carried there from the equilibrium."""
     record = Bench(tmp_path).compute(

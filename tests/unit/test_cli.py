@@ -3,7 +3,6 @@
 from pathlib import Path
 
 import pytest
-
 from scission.cli import COMMANDS, build_parser, main
 from scission.cli.campaign_run import has_failures
 from scission.cli.common import DEMO, WrongInputError

@@ -2,7 +2,6 @@
 
 import pytest
 from scipy import constants
-
 from scission import units
 
 CODATA_NAMES = {
@@ -31,7 +30,7 @@ def test_derived_factors_agree_with_codata_conversions() -> None:
     ratio = constants.physical_constants["atomic mass constant energy equivalent in MeV"][0]
     electron = constants.physical_constants["electron mass energy equivalent in MeV"][0]
 
-    assert units.HARTREE_IN_PER_CM == pytest.approx(per_metre / 100.0, rel=1e-12)
-    assert units.DALTON_IN_ELECTRON_MASS == pytest.approx(ratio / electron, rel=1e-9)
-    assert units.HARTREE_IN_KCAL_PER_MOL == pytest.approx(627.5095, abs=1e-4)  # handbook value, from memory
-    assert units.AU_DIPOLE_IN_DEBYE == pytest.approx(2.541746, abs=1e-6)  # handbook value, from memory
+    assert pytest.approx(per_metre / 100.0, rel=1e-12) == units.HARTREE_IN_PER_CM
+    assert pytest.approx(ratio / electron, rel=1e-9) == units.DALTON_IN_ELECTRON_MASS
+    assert pytest.approx(627.5095, abs=1e-4) == units.HARTREE_IN_KCAL_PER_MOL  # handbook value, from memory
+    assert pytest.approx(2.541746, abs=1e-6) == units.AU_DIPOLE_IN_DEBYE  # handbook value, from memory

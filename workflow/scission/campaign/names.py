@@ -38,7 +38,7 @@ class AtomBasis:
 @cache
 def known() -> dict[str, Any]:
     """Content of ``known_names.json``."""
-    return json.loads((Path(__file__).parent / "known_names.json").read_text(encoding="utf-8"))  # type: ignore[no-any-return]
+    return json.loads((Path(__file__).parent / "known_names.json").read_text(encoding="utf-8"))
 
 
 def normalised(basis: str) -> str:

@@ -73,7 +73,9 @@ def choose_space(
             why += ", from the atomic orbitals " + ", ".join(request["atomic_orbitals"])
     n_inactive = (mole.nelectron - electrons) // 2
     if n_inactive < 0 or n_inactive + size > mole.nao:
-        raise ValueError(f"{electrons} electrons in {size} orbitals do not fit {mole.nelectron} electrons in {mole.nao} functions")
+        raise ValueError(
+            f"{electrons} electrons in {size} orbitals do not fit {mole.nelectron} electrons in {mole.nao} functions"
+        )
     strict = projector is not None
     if projector is None:
         bonded = sorted({a for bond in bonds for a in bond})
@@ -118,7 +120,9 @@ def valence_shells(mole: gto.Mole, atoms: list[int]) -> list[tuple[int, str]]:
         z = elements.charge(mole.atom_symbol(a))
         n = 1 + sum(z > last for last in noble)
         shells += [(a, f"{n}s")]
-        if n > 1 and z - noble[n - 2] > 2:  # free atoms of groups 1 and 2 have no p shell in the minimal basis
+        if (
+            n > 1 and z - noble[n - 2] > 2
+        ):  # free atoms of groups 1 and 2 have no p shell in the minimal basis
             shells += [(a, f"{n}p")]
         if n > 3 and 2 < z - noble[n - 2] <= 12:
             shells += [(a, f"{n - 1}d")]
@@ -132,7 +136,11 @@ def named_shells(mole: gto.Mole, names: list[str]) -> list[tuple[int, str]]:
         label, shell = name.split()
         symbol = label.rstrip("0123456789")
         number = label[len(symbol) :]
-        atoms = [int(number) - 1] if number else [a for a in range(mole.natm) if mole.atom_pure_symbol(a) == symbol]
+        atoms = (
+            [int(number) - 1]
+            if number
+            else [a for a in range(mole.natm) if mole.atom_pure_symbol(a) == symbol]
+        )
         shells += [(a, shell) for a in atoms]
     return shells
 
@@ -149,10 +157,13 @@ def _automatic(
         electrons = round(float(breaking.sum()))
         electrons += (electrons - mole.nelectron) % 2
         shown = ", ".join(f"{n:.2f}" for n in breaking)
-        why = f"natural orbitals of the stretched bond with occupations {shown} ({electrons} electrons in {len(breaking)} orbitals)"
+        size = f"{electrons} electrons in {len(breaking)} orbitals"
+        why = f"natural orbitals of the stretched bond with occupations {shown} ({size})"
         return electrons, len(breaking), why, []
     open_shells = mole.spin
-    why = f"no orbital breaks at this length: one pair of bond orbitals and {open_shells} singly occupied ones"
+    why = (
+        f"no orbital breaks at this length: one pair of bond orbitals and {open_shells} singly occupied ones"
+    )
     return 2 + open_shells, 2 + open_shells, why, []
 
 
@@ -169,7 +180,8 @@ def _valence_of_atoms(
     electrons = sum(g - (10 if with_s else 12) for g in groups) - mole.charge
     orbitals = 8 if with_s else 6
     kind = "valence s and p" if with_s else "valence p"
-    why = f"{kind} shells of both atoms ({electrons} electrons in {orbitals} orbitals): atoms of groups 13 to 16 share several bonds"
+    size = f"{electrons} electrons in {orbitals} orbitals"
+    why = f"{kind} shells of both atoms ({size}): atoms of groups 13 to 16 share several bonds"
     return electrons, orbitals, why, shells
 
 

@@ -74,8 +74,12 @@ def _virtual_densities(t1: Any, t2: Any) -> list[Array]:
     if len(t2) == 1:
         return [singles[0] + np.einsum("ijab,ijcb->ac", t2[0], t2[0], optimize=True)]
     aa, ab, bb = t2
-    alpha = np.einsum("ijab,ijcb->ac", aa, aa, optimize=True) / 2 + np.einsum("ijab,ijcb->ac", ab, ab, optimize=True)
-    beta = np.einsum("ijab,ijcb->ac", bb, bb, optimize=True) / 2 + np.einsum("ijba,ijbc->ac", ab, ab, optimize=True)
+    alpha = np.einsum("ijab,ijcb->ac", aa, aa, optimize=True) / 2 + np.einsum(
+        "ijab,ijcb->ac", ab, ab, optimize=True
+    )
+    beta = np.einsum("ijab,ijcb->ac", bb, bb, optimize=True) / 2 + np.einsum(
+        "ijba,ijbc->ac", ab, ab, optimize=True
+    )
     return [singles[0] + alpha, singles[1] + beta]
 
 

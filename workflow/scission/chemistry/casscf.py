@@ -89,13 +89,17 @@ def finish_casscf(task: dict[str, Any], record: Record) -> Solution:
     mc = casci_object(mole, task["spec"], record.arrays["active"], orbital_step=False)
     _, inverse_root = root_overlap(mole)
     coeff = inverse_root @ record.arrays["mo_lowdin"][0]
-    solution = _solution(task, mole, mc, coeff, list(record.arrays["ci"]), record.arrays["state_energies"], True)
+    solution = _solution(
+        task, mole, mc, coeff, list(record.arrays["ci"]), record.arrays["state_energies"], True
+    )
     if "state_labels" in record.arrays:
         solution.extra["state_labels"] = record.arrays["state_labels"]
     return solution
 
 
-def _begin(task: dict[str, Any], store: Store, mole: gto.Mole, start: dict[str, Any]) -> tuple[Any, ...] | None:
+def _begin(
+    task: dict[str, Any], store: Store, mole: gto.Mole, start: dict[str, Any]
+) -> tuple[Any, ...] | None:
     """Return (coefficients, CI vectors or None, sizes, notes) to start from, or ``None``."""
     if "carry" in start:
         parent = store.read("reference", start["carry"])
@@ -108,7 +112,12 @@ def _begin(task: dict[str, Any], store: Store, mole: gto.Mole, start: dict[str, 
     _, inverse_root = root_overlap(mole)
     space = _select(task, store, mole)
     sizes = np.array([space.n_inactive, space.n_orbitals, space.n_electrons])
-    return inverse_root @ space.orbitals, None, sizes, {"active_space": space.why, "start": "space chosen here"}
+    return (
+        inverse_root @ space.orbitals,
+        None,
+        sizes,
+        {"active_space": space.why, "start": "space chosen here"},
+    )
 
 
 def _select(task: dict[str, Any], store: Store, mole: gto.Mole) -> ActiveSpace:
@@ -142,7 +151,12 @@ def _neutral_density(task: dict[str, Any]) -> Array | None:
 
 
 def _optimise(
-    task: dict[str, Any], mole: gto.Mole, coeff: Array, vectors: list[Array] | None, sizes: Array, notes: dict[str, str]
+    task: dict[str, Any],
+    mole: gto.Mole,
+    coeff: Array,
+    vectors: list[Array] | None,
+    sizes: Array,
+    notes: dict[str, str],
 ) -> Solution:
     """Optimise orbitals and CI vectors; where the first-order steps do not converge, the second-order solver."""
     spec = task["spec"]
@@ -159,7 +173,9 @@ def _optimise(
         mc.kernel(np.asarray(coeff), ci0=guess)
     found = list(mc.ci) if averaged else [mc.ci]
     energies = np.atleast_1d(mc.e_states if averaged else mc.e_tot)
-    solution = _solution(task, mole, mc, np.asarray(mc.mo_coeff), [np.asarray(v) for v in found], energies, False)
+    solution = _solution(
+        task, mole, mc, np.asarray(mc.mo_coeff), [np.asarray(v) for v in found], energies, False
+    )
     solution.converged = bool(mc.converged)
     solution.notes = notes
     solution.extra["active"] = sizes
@@ -186,7 +202,13 @@ def _with_symmetry(
 
 
 def _solution(
-    task: dict[str, Any], mole: gto.Mole, mc: Any, coeff: Array, vectors: list[Array], energies: Array, diagnose: bool
+    task: dict[str, Any],
+    mole: gto.Mole,
+    mc: Any,
+    coeff: Array,
+    vectors: list[Array],
+    energies: Array,
+    diagnose: bool,
 ) -> Solution:
     n_core, n_active = int(mc.ncore), int(mc.ncas)
     order = np.argsort(energies, kind="stable")

@@ -23,7 +23,7 @@ TOLERANCE_ANGSTROM = 1e-4
 SCALAR = "coulson_fischer"
 
 
-class _Lost(RuntimeError):
+class _LostError(RuntimeError):
     """A determinant between the two points did not converge, or has another occupation."""
 
 
@@ -43,7 +43,7 @@ def add_coulson_fischer(task: dict[str, Any], store: Store, _: Stopwatch) -> Rec
     low, high = task["coordinates"]
     try:
         length, steps = _root(task, first, second)
-    except _Lost as lost:
+    except _LostError as lost:
         first.notes[SCALAR] = (
             f"no zero of the triplet stability found between {low:.4f} and {high:.4f} angstrom: {lost}"
         )
@@ -77,5 +77,5 @@ def _eigenvalue(task: dict[str, Any], parent: Record, positions: np.ndarray) -> 
     mole = build_mole(task["molecule"], task["spec"]["basis"], positions)
     field = scf.converge(scf.build_field(mole, task["spec"]), carried(parent, mole).density())
     if not field.converged:
-        raise _Lost("a determinant in between did not converge")
+        raise _LostError("a determinant in between did not converge")
     return scf.triplet_stability(field)

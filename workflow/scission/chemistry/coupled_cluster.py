@@ -30,7 +30,9 @@ REMEDIES: dict[str, dict[str, float | int]] = {
 }
 
 
-def coupled_cluster(task: dict[str, Any], field: Any, reference: Record, frozen: int, store: Store) -> Solution:
+def coupled_cluster(
+    task: dict[str, Any], field: Any, reference: Record, frozen: int, store: Store
+) -> Solution:
     """Return the CCSD or CCSD(T) energy and amplitudes on an RHF, UHF or ROHF reference.
 
     Where the iterations do not converge, or end on a solution above the reference, the amplitudes of
@@ -54,7 +56,11 @@ def make_solver(field: Any, frozen: int) -> Any:
     if isinstance(field, rohf.ROHF):
         field = semicanonical(field, frozen)
     solver = cc.CCSD(field, frozen=frozen or None)
-    solver.conv_tol, solver.conv_tol_normt, solver.max_cycle = ENERGY_TOLERANCE, AMPLITUDE_TOLERANCE, MAX_CYCLES
+    solver.conv_tol, solver.conv_tol_normt, solver.max_cycle = (
+        ENERGY_TOLERANCE,
+        AMPLITUDE_TOLERANCE,
+        MAX_CYCLES,
+    )
     return solver
 
 
@@ -151,7 +157,9 @@ def _iterate(solver: Any, start: tuple[Any, Any] | None, changes: dict[str, floa
 
 def _sound(solver: Any) -> bool:
     """Whether the correlation energy is one a ground state can have: finite and not above the reference."""
-    return solver.e_corr is not None and bool(np.isfinite(solver.e_corr)) and -_DIVERGED < solver.e_corr < 1e-9
+    return (
+        solver.e_corr is not None and bool(np.isfinite(solver.e_corr)) and -_DIVERGED < solver.e_corr < 1e-9
+    )
 
 
 def _complete(solution: Solution, solver: Any, triples: float | None) -> None:
@@ -165,5 +173,9 @@ def _complete(solution: Solution, solver: Any, triples: float | None) -> None:
     if not solution.converged:
         return
     solution.extra["amplitude_orbitals"] = fingerprint(solver)
-    solution.t1 = tuple(np.asarray(t) for t in solver.t1) if isinstance(solver.t1, tuple) else (np.asarray(solver.t1),)
-    solution.t2 = tuple(np.asarray(t) for t in solver.t2) if isinstance(solver.t2, tuple) else (np.asarray(solver.t2),)
+    solution.t1 = (
+        tuple(np.asarray(t) for t in solver.t1) if isinstance(solver.t1, tuple) else (np.asarray(solver.t1),)
+    )
+    solution.t2 = (
+        tuple(np.asarray(t) for t in solver.t2) if isinstance(solver.t2, tuple) else (np.asarray(solver.t2),)
+    )

@@ -13,7 +13,7 @@ from . import scf
 from .bond_picture import describe_active_bond
 from .casscf import finish_casscf, solve_casscf
 from .compare import likeness
-from .molecule import build_mole, root_overlap
+from .molecule import build_mole
 from .orbitals import Orbitals, not_orthonormal
 from .pictures import PICTURE_FUNCTIONS, solve_picture
 from .recording import Stopwatch, guarded, record_of
@@ -60,7 +60,9 @@ def finish_reference(task: dict[str, Any], store: Store, watch: Stopwatch) -> Re
         solution = solve_picture(task)
     else:
         mole = build_mole(task["molecule"], task["spec"]["basis"], np.array(task["positions"]))
-        field = scf.put_orbitals(scf.build_field(mole, task["spec"]), carried(record, mole), record.scalars["energy"])
+        field = scf.put_orbitals(
+            scf.build_field(mole, task["spec"]), carried(record, mole), record.scalars["energy"]
+        )
         solution = solution_of_field(field, task["spec"], diagnose=True, bonds=task.get("bonds", ()))
         _keep_orbitals(solution)
     solution.notes = {**record.notes, **solution.notes, **task.get("notes", {})}

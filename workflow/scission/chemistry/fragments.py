@@ -70,12 +70,21 @@ def fragment_densities(
     mole = build_mole(facts, basis, positions)
     field = uhf.UHF(mole)
     for number, split in enumerate(promising_splits(facts, basis, positions, fragments)):
-        options = [_orientations(facts, basis, atoms, s, axis) for atoms, s in zip(fragments, split.states, strict=True)]
+        options = [
+            _orientations(facts, basis, atoms, s, axis)
+            for atoms, s in zip(fragments, split.states, strict=True)
+        ]
         scored: list[tuple[float, Array]] = []
         for choice in product(*options):
             density = _assemble(mole, fragments, choice, split.flipped)
-            score = -_spread(mole, density[0] - density[1], axis) if axial else float(field.energy_tot(dm=density))
-            if not any(abs(score - known) < _SAME_SCORE for known, _ in scored):  # equal ones are turned copies
+            score = (
+                -_spread(mole, density[0] - density[1], axis)
+                if axial
+                else float(field.energy_tot(dm=density))
+            )
+            if not any(
+                abs(score - known) < _SAME_SCORE for known, _ in scored
+            ):  # equal ones are turned copies
                 scored.append((score, density))
         scored.sort(key=lambda s: s[0])
         for _, density in scored[: _ORIENTATIONS if number == 0 else 1]:
@@ -118,7 +127,11 @@ def promising_splits(
 def _charge_splits(total: int) -> list[tuple[int, int]]:
     """Return the ways to give a total charge to two fragments, none further than one from an even share."""
     half = total // 2
-    return [(q, total - q) for q in range(min(half, 0) - 1, max(total - half, 0) + 2) if abs(total - q) <= abs(total) + 1]
+    return [
+        (q, total - q)
+        for q in range(min(half, 0) - 1, max(total - half, 0) + 2)
+        if abs(total - q) <= abs(total) + 1
+    ]
 
 
 def _unpaired_options(facts: dict[str, Any], atoms: Sequence[int], q: int) -> list[int]:
@@ -141,7 +154,12 @@ def _flips(unpaired: Sequence[int], wanted: int) -> tuple[bool, ...] | None:
 
 
 def _fragment_state(
-    facts: dict[str, Any], basis: dict[str, str], positions: Array, atoms: Sequence[int], q: int, unpaired: int
+    facts: dict[str, Any],
+    basis: dict[str, str],
+    positions: Array,
+    atoms: Sequence[int],
+    q: int,
+    unpaired: int,
 ) -> FragmentState | None:
     """Return a fragment's unrestricted solution, or ``None`` if it does not converge well enough to start from."""
     part = {"symbols": [facts["symbols"][a] for a in atoms], "charge": q, "multiplicity": unpaired + 1}
@@ -163,7 +181,11 @@ def _orientations(
     """Return a fragment's density in each orientation worth trying."""
     if len(atoms) > 1:
         return [state.density]
-    part = {"symbols": [facts["symbols"][atoms[0]]], "charge": state.charge, "multiplicity": state.unpaired + 1}
+    part = {
+        "symbols": [facts["symbols"][atoms[0]]],
+        "charge": state.charge,
+        "multiplicity": state.unpaired + 1,
+    }
     atom = build_mole(part, basis, np.zeros((1, 3)))
     frame = _frame(axis)
     rotated: list[Array] = []
@@ -196,11 +218,13 @@ def _frame(axis: Array) -> Array:
     return np.array([x, np.cross(z, x), z]).T
 
 
-def _assemble(mole: gto.Mole, fragments: Sequence[Sequence[int]], densities: Sequence[Array], flipped: Sequence[bool]) -> Array:
+def _assemble(
+    mole: gto.Mole, fragments: Sequence[Sequence[int]], densities: Sequence[Array], flipped: Sequence[bool]
+) -> Array:
     """Return the block-diagonal density of the molecule, (2, n_ao, n_ao), from its fragments' densities."""
     total = np.zeros((2, mole.nao, mole.nao))
     slices = mole.aoslice_by_atom()[:, 2:]
     for atoms, density, flip in zip(fragments, densities, flipped, strict=True):
         where = np.concatenate([np.arange(*slices[a]) for a in atoms])
-        total[np.ix_((0, 1), where, where)] += density[::-1] if flip else density
+        total[np.ix_(np.arange(2), where, where)] += density[::-1] if flip else density
     return total

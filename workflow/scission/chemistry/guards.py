@@ -23,8 +23,8 @@ def violation(solution: Solution, upper_bounds: dict[str, float]) -> tuple[str, 
         return "spin", spin
     for name, bound in upper_bounds.items():
         if solution.energy > bound + ENERGY_ROOM:
-            words = f"energy {solution.energy:.8f} hartree lies above that of the {name}, {bound:.8f}: a higher solution"
-            return "bound-violated", words
+            words = f"energy {solution.energy:.8f} hartree lies above that of the {name}, {bound:.8f}"
+            return "bound-violated", f"{words}: a higher solution"
     return None
 
 

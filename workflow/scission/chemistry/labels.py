@@ -20,7 +20,9 @@ def label_states(task: dict[str, Any], store: Store, _: Stopwatch) -> Record:
     """
     record = store.read("reference", task["key"])
     if record is None:
-        raise RuntimeError(f"reference record {task['key']} is missing: it must exist before its states are labelled")
+        raise RuntimeError(
+            f"reference record {task['key']} is missing: it must exist before its states are labelled"
+        )
     n = len(record.arrays["state_energies"])
     neighbour = store.read("reference", task["from"]) if task.get("from") else None
     if neighbour is None or "state_labels" not in neighbour.arrays:

@@ -14,7 +14,7 @@ from .casscf import casci_object, finish_casscf
 from .molecule import root_overlap
 
 
-def nevpt2(task: dict[str, Any], field: Any, reference: Record, _: int, __: Store) -> Solution:
+def nevpt2(task: dict[str, Any], field: Any, reference: Record, __: int, ___: Store) -> Solution:
     """Return the SC-NEVPT2 energy of each state; all electrons are correlated, the engine freezes none.
 
     Angeli, Cimiraglia and Malrieu, J. Chem. Phys. 117, 9138 (2002).

@@ -52,7 +52,12 @@ class Stopwatch:
 
 
 def record_of(
-    solution: Solution, kind: str, task: dict[str, Any], watch: Stopwatch, diagnose: bool = True, calculation: str = ""
+    solution: Solution,
+    kind: str,
+    task: dict[str, Any],
+    watch: Stopwatch,
+    diagnose: bool = True,
+    calculation: str = "",
 ) -> Record:
     """Return the record of a finished calculation; unconverged ones say so in status and message.
 

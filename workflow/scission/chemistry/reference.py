@@ -87,7 +87,9 @@ def _from_parent(task: dict[str, Any], mole: gto.Mole, parent: Record, remedy: s
     if task.get("choose") != "first" or _likeness(field, start, mole) >= task.get("alike", 0.9):
         return field
     near = scf.second_order(scf.build_field(mole, spec), *_as_engine(spec, start))
-    if near.converged and (not field.converged or _likeness(near, start, mole) > _likeness(field, start, mole)):
+    if near.converged and (
+        not field.converged or _likeness(near, start, mole) > _likeness(field, start, mole)
+    ):
         return near
     return field
 
@@ -171,4 +173,3 @@ def _better(new: Any, old: Any) -> bool:
     if new.converged != old.converged:
         return bool(new.converged)
     return bool(new.e_tot < old.e_tot - _SAME_ENERGY)
-

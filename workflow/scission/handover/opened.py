@@ -119,8 +119,12 @@ class OpenCampaign:
 
     def _read_table(self, name: str) -> pd.DataFrame:
         path = self._table_file(name)
-        table = pd.read_csv(path, keep_default_na=False, na_values=_no_words(name), dtype=_types(name))
-        return described(table, COLUMNS[name])
+        if path.with_suffix(".parquet").is_file():  # the same content, many times faster to read
+            table = pd.read_parquet(path.with_suffix(".parquet"))
+        else:
+            table = pd.read_csv(path, keep_default_na=False, na_values=_no_words(name))
+        known = {column: dtype for column, dtype in _types(name).items() if column in table.columns}
+        return described(table.astype(known), COLUMNS[name])
 
 
 def _types(name: str) -> dict[str, Any]:

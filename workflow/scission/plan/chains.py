@@ -8,6 +8,7 @@ from __future__ import annotations
 
 from collections.abc import Iterable, Sequence
 from dataclasses import replace
+from itertools import pairwise
 from typing import Any
 
 import numpy as np
@@ -71,7 +72,7 @@ def auxiliary_lengths(grid: Sequence[float], equilibrium: float, need_stretched:
     if need_stretched and not any(0.9 * target <= x <= 1.25 * target for x in lengths):
         added.append(target)
     knots = sorted([*lengths, *added])
-    for a, b in zip(knots, knots[1:], strict=False):
+    for a, b in pairwise(knots):
         added += _fill(a, b, equilibrium)
     return [round(x, 6) for x in sorted(added)]
 

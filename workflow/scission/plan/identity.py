@@ -48,14 +48,20 @@ def reference_spec(level: Level, molecule: Molecule) -> dict[str, Any]:
 
 
 def reference_key(
-    molecule: dict[str, Any], spec: dict[str, Any], bonds: Sequence[Sequence[int]], positions: NDArray[np.float64]
+    molecule: dict[str, Any],
+    spec: dict[str, Any],
+    bonds: Sequence[Sequence[int]],
+    positions: NDArray[np.float64],
 ) -> str:
     """Return the key of a reference wavefunction at ``positions`` ((n_atoms, 3), bohr)."""
     return reference_keys(molecule, spec, bonds, np.asarray(positions)[None])[0]
 
 
 def reference_keys(
-    molecule: dict[str, Any], spec: dict[str, Any], bonds: Sequence[Sequence[int]], positions: NDArray[np.float64]
+    molecule: dict[str, Any],
+    spec: dict[str, Any],
+    bonds: Sequence[Sequence[int]],
+    positions: NDArray[np.float64],
 ) -> list[str]:
     """Return the keys of a reference wavefunction at several geometries ((n_points, n_atoms, 3), bohr).
 

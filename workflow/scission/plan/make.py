@@ -47,10 +47,14 @@ def make_plan(campaign: Campaign, block_seconds: float = BLOCK_SECONDS) -> Plan:
         chains += _scan_chains(campaign, scan_name, scan, path)
     publish = [w for w in work if w["correlation"] == "none"]
     jobs = _reference_jobs(merge_chains(chains), publish, block_seconds)
-    owner = {key: job.id for job in jobs for key in job.payload["reference_keys"]}  # the last stage comes last
+    owner = {
+        key: job.id for job in jobs for key in job.payload["reference_keys"]
+    }  # the last stage comes last
     jobs += _correlate_jobs([w for w in work if w["correlation"] != "none"] + extra, owner, block_seconds)
     jobs += _fragment_jobs(campaign, points, owner)
-    return Plan(campaign, tuple(points), tuple(jobs), PHYSICS_VERSION, campaign_digest(campaign, block_seconds))
+    return Plan(
+        campaign, tuple(points), tuple(jobs), PHYSICS_VERSION, campaign_digest(campaign, block_seconds)
+    )
 
 
 def _expand_scan(
@@ -84,7 +88,9 @@ def _add_neighbours(items: list[dict[str, Any]], equilibrium: float) -> None:
         item["neighbours"] = [told[j] for j in inward[:_NEIGHBOURS]]
 
 
-def _describe(level: Level, facts: dict[str, Any], spec: dict[str, Any], point: Point, positions: Any) -> dict[str, Any]:
+def _describe(
+    level: Level, facts: dict[str, Any], spec: dict[str, Any], point: Point, positions: Any
+) -> dict[str, Any]:
     return {
         "kind": "correlate",
         "key": point.key,
@@ -104,7 +110,7 @@ def _describe(level: Level, facts: dict[str, Any], spec: dict[str, Any], point: 
 def _scan_chains(campaign: Campaign, name: str, scan: Scan, path: ScanPath) -> list[Chain]:
     """Return one chain for each different reference among the levels of a scan."""
     molecule = campaign.molecules[scan.molecule]
-    specs = {}
+    specs: dict[str, dict[str, Any]] = {}
     for level_name in scan.levels:
         spec = reference_spec(campaign.levels[level_name], molecule)
         specs.setdefault(canonical(spec), spec)
@@ -171,7 +177,17 @@ def _correlate_jobs(work: Sequence[dict[str, Any]], owner: dict[str, str], block
             block = items[b * len(items) // n_blocks : (b + 1) * len(items) // n_blocks]
             needs = tuple(dict.fromkeys(owner[i["reference_key"]] for i in block))
             memory = forecast.correlate_memory_mb(block[0])
-            jobs.append(_job("correlate", ".".join(group), needs, {"points": block}, len(block), seconds * len(block), memory))
+            jobs.append(
+                _job(
+                    "correlate",
+                    ".".join(group),
+                    needs,
+                    {"points": block},
+                    len(block),
+                    seconds * len(block),
+                    memory,
+                )
+            )
     return jobs
 
 
@@ -190,7 +206,13 @@ def _fragment_jobs(campaign: Campaign, points: Sequence[Point], owner: dict[str,
 
 
 def _job(
-    stage: str, name: str, needs: tuple[str, ...], payload: dict[str, Any], n: int, seconds: float, memory: float
+    stage: str,
+    name: str,
+    needs: tuple[str, ...],
+    payload: dict[str, Any],
+    n: int,
+    seconds: float,
+    memory: float,
 ) -> Job:
     """Return a job whose name follows from its content, with room over its forecast time and memory."""
     fingerprint = digest(canonical(_without_positions(payload)))[:10]
@@ -226,7 +248,12 @@ def _chain_payload(chain: Chain) -> dict[str, Any]:
         "start": chain.start,
         "stretched": chain.stretched,
         "nodes": [
-            {"key": n.key, "coordinate": n.coordinate, "positions": n.positions.tolist(), "auxiliary": n.auxiliary}
+            {
+                "key": n.key,
+                "coordinate": n.coordinate,
+                "positions": n.positions.tolist(),
+                "auxiliary": n.auxiliary,
+            }
             for n in chain.nodes
         ],
     }

@@ -7,6 +7,7 @@ spine, each block by itself.  Reconcile: all nodes are compared, and what differ
 from __future__ import annotations
 
 from dataclasses import dataclass, replace
+from itertools import pairwise
 
 from .types import Chain
 
@@ -36,16 +37,15 @@ def cut(chain: Chain, careful: bool) -> tuple[Stage, list[Stage]]:
     wanted |= {chain.stretched} if careful else set()
     knots = sorted(wanted)
     spine = Stage("spine", _part(chain, knots))
-    blocks = [
-        Stage("block", _part(chain, list(range(a, b + 1)))) for a, b in zip(knots, knots[1:], strict=False) if b > a + 1
-    ]
+    blocks = [Stage("block", _part(chain, list(range(a, b + 1)))) for a, b in pairwise(knots) if b > a + 1]
     return spine, blocks
 
 
 def _part(chain: Chain, indices: list[int]) -> Chain:
     """Return the chain of some of its nodes; start and stretched move to the nearest of them."""
     start, stretched = (
-        min(range(len(indices)), key=lambda i: abs(indices[i] - wanted)) for wanted in (chain.start, chain.stretched)
+        min(range(len(indices)), key=lambda i: abs(indices[i] - wanted))
+        for wanted in (chain.start, chain.stretched)
     )
     nodes = tuple(chain.nodes[i] for i in indices)
     return replace(chain, nodes=nodes, start=start, stretched=stretched)

@@ -60,7 +60,10 @@ class Chain:
 
 @dataclass(frozen=True)
 class Job:
-    """One unit of work (stage reference, correlate or fragments) for the engine; ``payload`` is everything its worker has to know."""
+    """One unit of work for the engine; ``payload`` is everything its worker has to know.
+
+    ``stage`` is reference, correlate or fragments.
+    """
 
     id: str
     stage: str

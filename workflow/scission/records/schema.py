@@ -61,7 +61,9 @@ SCALARS = (
     Field("bond_ionic_second", "f8", "1", (), "weight of electrons moved to the second fragment, orthogonal"),
     Field("vb_covalent", "f8", "1", (), "weight of the covalent structure, non-orthogonal fragment orbitals"),
     Field("vb_ionic_first", "f8", "1", (), "weight of both electrons on the first fragment, non-orthogonal"),
-    Field("vb_ionic_second", "f8", "1", (), "weight of both electrons on the second fragment, non-orthogonal"),
+    Field(
+        "vb_ionic_second", "f8", "1", (), "weight of both electrons on the second fragment, non-orthogonal"
+    ),
     Field("vb_captured", "f8", "1", (), "share of the wavefunction that the fragments' orbitals capture"),
     Field("vb_overlap", "f8", "1", (), "overlap of the two fragments' orbitals"),
     Field("wall_s", "f8", "s", (), "wall time of the calculation"),

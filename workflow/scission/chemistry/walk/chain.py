@@ -34,7 +34,9 @@ class Node:
 class ChainState:
     """Nodes of one chain in the order of the coordinate, with the records they have so far."""
 
-    def __init__(self, chain: dict[str, Any], store: Store, run: Callable[[dict[str, Any]], dict[str, Any]]) -> None:
+    def __init__(
+        self, chain: dict[str, Any], store: Store, run: Callable[[dict[str, Any]], dict[str, Any]]
+    ) -> None:
         self.chain = chain
         self.store = store
         self._run = run

@@ -9,7 +9,11 @@ from .chain import SMOOTH, ChainState, Node
 DEEPEST = 4
 """How often an interval is halved before a change of state in it counts as sudden."""
 
-_LAST_RESORTS: tuple[dict[str, Any], ...] = ({"remedy": "level-shift"}, {"remedy": "damping"}, {"remedy": "second-order"})
+_LAST_RESORTS: tuple[dict[str, Any], ...] = (
+    {"remedy": "level-shift"},
+    {"remedy": "damping"},
+    {"remedy": "second-order"},
+)
 
 
 def follow_from_anchor(state: ChainState) -> None:
@@ -33,7 +37,9 @@ def _pursue(state: ChainState) -> None:
         parent = state.good_towards(node, state.start)
         if parent is not None and state.good(node) and state.overlap(parent, node) < SMOOTH:
             before = state.overlap(parent, node)
-            state.solve(node, [{"carry": parent.key}], choose="first", replace="closer_state", closer_to=parent.key)
+            state.solve(
+                node, [{"carry": parent.key}], choose="first", replace="closer_state", closer_to=parent.key
+            )
             if state.good(node) and before < state.overlap(parent, node) < SMOOTH:
                 _approach(state, parent, node, DEEPEST)
 

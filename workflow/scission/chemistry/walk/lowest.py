@@ -65,7 +65,9 @@ def _walk(state: ChainState, anchor: Node) -> None:
     """Carry the anchor's solution outward on both sides, keeping at each node what is lower."""
     for node, nearer in state.outward(anchor):
         parent = nearer if state.good(nearer) else state.good_towards(node, anchor)
-        if parent is None or (state.settled(node) and state.good(node) and not worth_trying(state, parent, node)):
+        if parent is None or (
+            state.settled(node) and state.good(node) and not worth_trying(state, parent, node)
+        ):
             continue
         state.solve(node, [{"carry": parent.key}], choose="lowest", replace="lower")
 

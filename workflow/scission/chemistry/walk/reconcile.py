@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from typing import Any
 
-from .chain import LOWER, SMOOTH, ChainState, Node
+from .chain import SMOOTH, ChainState, Node
 
 DEEPEST = 3
 """How often the interval of a sudden change is halved before it is reported as a crossing."""
@@ -36,7 +36,9 @@ def _align(state: ChainState) -> None:
         if swapped:
             state.swap(node)
         if overlap < SMOOTH:
-            state.solve(node, [{"carry": nearer.key}], choose="lowest", replace="closer", closer_to=nearer.key)
+            state.solve(
+                node, [{"carry": nearer.key}], choose="lowest", replace="closer", closer_to=nearer.key
+            )
 
 
 def _narrow(state: ChainState, a: Node, b: Node, depth: int) -> tuple[Node, Node] | None:
