@@ -148,6 +148,21 @@ def test_a_plan_is_added_up(tmp_path):
     assert forecast.finish_s(1) == pytest.approx(forecast.total.core_s)
 
 
+def test_each_reference_of_a_chain_cut_into_stages_counts_once(tmp_path):
+    """Spine and blocks share the nodes; the last stage only mends."""
+    plan = make_plan(load(changed(), tmp_path), block_seconds=1e-3)
+    whole = make_plan(load(changed(), tmp_path))
+    counted, known = (
+        {line.name: line.calculations for line in estimate(p).lines if line.name.endswith("references")}
+        for p in (plan, whole)
+    )
+
+    assert len([j for j in plan.jobs if j.stage == "reference"]) > len(
+        [j for j in whole.jobs if j.stage == "reference"]
+    )
+    assert counted == known
+
+
 def test_check_prints_the_forecast(tmp_path, capsys):
     """Core hours by level, memory, disk, and the time on the cores asked for."""
     path = tmp_path / "h2.yaml"

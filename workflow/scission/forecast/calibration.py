@@ -192,5 +192,5 @@ def expectation(work: dict[str, Any]) -> tuple[str, float]:
         return f"extra {work['calculation']}", correlate_seconds(work)
     if work["correlation"] == "none":
         raise KeyError("correlation")
-    fixed = _CORRELATION_FIXED_S[work["correlation"]] * (2.0 if spec["reference"] in _OPEN else 1.0)
+    fixed = _CORRELATION_FIXED_S.get(work["correlation"], 0.1) * (2.0 if spec["reference"] in _OPEN else 1.0)
     return f"{work['correlation']} on {spec['reference']}", fixed + correlate_seconds(work)

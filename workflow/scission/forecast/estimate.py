@@ -116,10 +116,9 @@ def _parts(job: Job) -> Iterator[Part]:
     """Give (line, calculations, method, expected seconds of all, an example) of what a job does."""
     if job.stage == "reference":
         for chain in job.payload["chains"]:
-            n = len(chain["nodes"])
             method, each = expectation(chain)
-            share, count = (_RECONCILE, 0) if job.needs else (1.0, n)
-            yield f"{method} references", count, method, each * n * share, chain
+            count, effort = _nodes(chain, mended=bool(job.needs))
+            yield f"{method} references", count, method, each * effort, chain
     elif job.stage == "fragments":
         for item in job.payload["points"]:
             yield "fragments", 1, "fragment", fragment_seconds(item), item
@@ -128,6 +127,14 @@ def _parts(job: Job) -> Iterator[Part]:
         method, each = expectation(points[0])
         extra = f" ({points[0]['calculation']})" if "calculation" in points[0] else ""
         yield f"{points[0]['level']}{extra}", len(points), method, each * len(points), points[0]
+
+
+def _nodes(chain: dict[str, Any], mended: bool) -> tuple[int, float]:
+    """Return how many references a chain, or a part of one, establishes, and how many it takes the time of."""
+    n = len(chain["nodes"])
+    if chain["phase"] == "block":  # its ends belong to the spine
+        return n - 2, n - 2.0
+    return (0, _RECONCILE * n) if chain["phase"] == "whole" and mended else (n, float(n))
 
 
 def makespan(jobs: Sequence[Job], durations: Sequence[float], cores: int) -> float:
