@@ -222,7 +222,7 @@ def _job(
 
 
 def _without_positions(payload: dict[str, Any]) -> dict[str, Any]:
-    """Return what names a job: keys cover geometries, and writing out all numbers would take long."""
+    """Return what names a job: keys cover molecules and geometries, and writing out all takes long."""
     return {
         name: [_lean(item) for item in content] if name in ("points", "publish", "chains") else content
         for name, content in payload.items()
@@ -230,7 +230,8 @@ def _without_positions(payload: dict[str, Any]) -> dict[str, Any]:
 
 
 def _lean(item: dict[str, Any]) -> dict[str, Any]:
-    lean = {k: v for k, v in item.items() if k != "positions"}
+    covered = ("positions", "molecule", "spec") if "key" in item else ("positions",)
+    lean = {k: v for k, v in item.items() if k not in covered}
     if "neighbours" in lean:
         lean["neighbours"] = [n["reference_key"] for n in lean["neighbours"]]
     if "nodes" in lean:
