@@ -109,7 +109,7 @@ H -2.1640 -1.2450  0.0000
 """p-benzyne, D2h, near its minimum, angstrom: typical lengths put together by hand."""
 
 
-@pytest.mark.slow
+@pytest.mark.lengthy
 def test_fractional_occupations_of_benzyne(tmp_path):
     """N_FOD of p-benzyne: published 0.938222 (TPSS/def2-TZVP, 5000 K), secondary copy.
 

@@ -4,17 +4,20 @@ from __future__ import annotations
 
 from collections.abc import Callable, Iterator
 from dataclasses import dataclass
+from itertools import pairwise
 from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
 
-from scission.chemistry.compare import overlap_and_swap
+from scission.chemistry.compare import overlap_and_swap, stability_changes
 from scission.plan.identity import reference_key
 from scission.records.store import Record, Store
 
 SMOOTH = 0.9
 """Neighbours whose occupied (or active) spaces overlap less than this are not the same state for sure."""
+
+_LEAVE_ORBITALS = ("finish", "label", "coulson_fischer")
 
 LOWER = 1e-6
 """By how much (hartree) a solution must lie lower to count as lower: ten times the tightest agreement of
@@ -154,6 +157,19 @@ class ChainState:
             evaluated = bool(record.diagnostics or record.absent)
             if not evaluated or node.key in self._touched or node.key in self.notes:
                 self._task(node, {"kind": "finish", "notes": self.notes.get(node.key, {})})
+        self._locate_instability()
+
+    def _locate_instability(self) -> None:
+        """Find the length between two points where the triplet stability eigenvalue passes through zero."""
+        points = [n for n in self.nodes if not n.auxiliary and self.good(n)]
+        for a, b in pairwise(points):
+            first, second = self.record(a), self.record(b)
+            if first is None or second is None or "coulson_fischer" in first.scalars:
+                continue
+            if stability_changes(first, second):
+                lengths = [a.coordinate, b.coordinate]
+                partner = {"partner": b.key, "partner_positions": b.positions.tolist()}
+                self._task(a, {"kind": "coulson_fischer", "coordinates": lengths, **partner})
 
     def outward(self, origin: Node) -> Iterator[tuple[Node, Node]]:
         """Yield (node, its neighbour nearer to ``origin``) on both sides, nearest first."""
@@ -196,5 +212,5 @@ class ChainState:
         self._records.pop(node.key, None)
         new = self.record(node)
         changed = old is None or new is None or new.stamp != old.stamp or what["kind"] == "swap"
-        if what["kind"] not in ("finish", "label") and changed:
+        if what["kind"] not in _LEAVE_ORBITALS and changed:
             self._touched.add(node.key)
