@@ -6,6 +6,7 @@ import math
 import pytest
 from campaigns import changed, load
 from scission.cli import main
+from scission.cli.check import learnt
 from scission.forecast import Calibration, calibrate, estimate
 from scission.forecast.calibration import CACHE, UNKNOWN, Group, expectation
 from scission.forecast.cost import correlate_seconds, n_functions, reference_seconds
@@ -113,6 +114,37 @@ def test_damaged_records_teach_nothing_and_stay_where_they_are(results):
 
     assert calibrate(results).n_records == 19
     assert path.is_file()
+
+
+@pytest.mark.parametrize(
+    "nonsense",
+    [
+        {"molecule": []},
+        {"spec": {"reference": "RHF", "basis": {"O": 7, "H": 7}}},
+        {"spec": {"reference": "RHF", "basis": {"O": "no-such-basis", "H": "no-such-basis"}}},
+        {"spec": {"reference": "XYZ", "basis": {}}},
+        {"correlation": {"a": 1}},
+    ],
+)
+def test_records_of_nonsense_teach_nothing(results, nonsense):
+    """Whatever the inputs of a record say, the others are read."""
+    item = work(WATER) | nonsense
+    scalars = {"energy": -76.0, "wall_s": 5.0}
+    Store(results / "first").write(Record("bb00", "point", "converged", scalars=scalars, inputs=item))
+
+    assert calibrate(results).n_records == 20
+
+
+def test_results_that_cannot_be_written_teach_all_the_same(results, monkeypatch, capsys):
+    """A word about it, and the forecast of the records."""
+
+    def refuse(path, *_):
+        raise PermissionError(13, f"cannot write {path}")
+
+    monkeypatch.setattr("scission.forecast.calibration.write_whole", refuse)
+
+    assert learnt(results).n_records == 20
+    assert "cannot be kept" in capsys.readouterr().err
 
 
 def test_points_that_compute_nothing_teach_nothing():

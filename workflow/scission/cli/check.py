@@ -70,11 +70,15 @@ def main(args: argparse.Namespace, rest: Sequence[str]) -> int:  # noqa: ARG001
 
 
 def learnt(results: Path) -> Calibration:
-    """Return what finished records teach; nothing, and a word about it, where they cannot be read."""
+    """Return what finished records teach; where that cannot be kept for the next time, say so."""
     from scission.forecast import Calibration, calibrate
 
     try:
         return calibrate(results)
+    except OSError as error:
+        tell(f"what earlier records teach cannot be kept: {error}")
+    try:
+        return calibrate(results, keep=False)
     except OSError as error:
         tell(f"the forecast goes without earlier records: {error}")
         return Calibration()

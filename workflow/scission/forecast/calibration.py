@@ -25,6 +25,7 @@ FORMAT = 1
 UNKNOWN = 3.0
 """Uncertainty, as a factor either way, of a method without records."""
 
+_MALFORMED = (TypeError, ValueError, AttributeError, OverflowError)
 _MOST_READ = 300
 """Records read of one campaign at most, of each kind half; spread over it, since keys are digests."""
 _BASE = 0.5
@@ -91,11 +92,15 @@ def _weights(groups: list[Group], n_basis: int) -> list[float]:
     ]
 
 
-def calibrate(results: Path) -> Calibration:
+def calibrate(results: Path, keep: bool = True) -> Calibration:
     """Return what the records of all campaigns below ``results`` teach.
 
     What was learnt is kept in ``results/.calibration.json``, so that only campaigns with new jobs are read
     again, and what a deleted campaign taught stays.
+
+    Args:
+        results: folder of the campaigns' folders.
+        keep: False to write nothing.
 
     Raises:
         OSError: the results cannot be read, or the cache cannot be written.
@@ -106,7 +111,7 @@ def calibrate(results: Path) -> Calibration:
         stamp = _stamp(folder)
         if kept.get(folder.name, {}).get("stamp") != stamp:
             campaigns[folder.name] = {"stamp": stamp, "groups": _learn(folder)}
-    if campaigns != kept:
+    if keep and campaigns != kept:
         text = json.dumps({"calibration": FORMAT, "campaigns": campaigns}, indent=1)
         write_whole(results / CACHE, text.encode())
     groups: dict[str, list[Group]] = defaultdict(list)
@@ -170,11 +175,12 @@ def _observation(path: Path) -> tuple[tuple[str, int], float, float] | None:
         with path.open("rb") as handle:
             head = unpack(handle, arrays=False)[0]
         inputs, wall = head["inputs"], float(head["scalars"]["wall_s"])
-        if head["status"] not in ("converged", "unconverged") or "calculation" in inputs or wall <= 0:
+        if head["status"] not in ("converged", "unconverged") or "calculation" in inputs:
             return None
         method, expected = expectation(inputs)
-        return (method, n_functions(inputs["molecule"], inputs["spec"])), wall, expected
-    except (FileNotFoundError, DamagedRecordError, KeyError, TypeError, ValueError):
+        size = n_functions(inputs["molecule"], inputs["spec"])
+        return ((method, size), wall, expected) if 0 < wall < math.inf and size else None
+    except (FileNotFoundError, DamagedRecordError, LookupError, *_MALFORMED):
         return None  # no record to learn from: damaged, or without a cost
 
 
