@@ -5,22 +5,7 @@ The engine calls it; by hand:
     .venv/bin/python scripts/report.py --results results/demo --campaign config/demo.yaml
 """
 
-import argparse
-from pathlib import Path
-
-from scission.execution.closing import show_campaign
-
-
-def main() -> None:
-    """Read the arguments and report."""
-    parser = argparse.ArgumentParser(
-        description=__doc__, formatter_class=argparse.RawDescriptionHelpFormatter, allow_abbrev=False
-    )
-    parser.add_argument("--results", type=Path, required=True, help="folder of the campaign's results")
-    parser.add_argument("--campaign", type=Path, required=True, help="campaign file")
-    args = parser.parse_args()
-    show_campaign(args.campaign, args.results.absolute())
-
+from scission.execution.closing import run_step, show_campaign
 
 if __name__ == "__main__":
-    main()
+    run_step(__doc__, show_campaign)

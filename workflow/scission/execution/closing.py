@@ -2,8 +2,9 @@
 
 from __future__ import annotations
 
+import argparse
 from collections import defaultdict
-from collections.abc import Iterable
+from collections.abc import Callable, Iterable
 from pathlib import Path
 from typing import Any
 
@@ -21,6 +22,17 @@ from scission.report import summary_text, write_report
 from scission.tables import write_tables
 
 _TOLD = ("from_angstrom", "to_angstrom", "overlap", "energy_step_hartree", "what")
+
+
+def run_step(description: str | None, step: Callable[[Path, Path], None]) -> None:
+    """Read --campaign and --results from the command line and do one closing step: what its script is made of."""
+    parser = argparse.ArgumentParser(
+        description=description, formatter_class=argparse.RawDescriptionHelpFormatter, allow_abbrev=False
+    )
+    parser.add_argument("--results", type=Path, required=True, help="folder of the campaign's results")
+    parser.add_argument("--campaign", type=Path, required=True, help="campaign file")
+    arguments = parser.parse_args()
+    step(arguments.campaign, arguments.results.absolute())
 
 
 def gather_campaign(campaign_file: Path, folder: Path) -> None:
