@@ -31,10 +31,10 @@ HOUSE: dict[str, Room] = {
     "geometry": Room("units", "numpy"),
     # what is to be computed
     "campaign": Room("units geometry diagnostics thresholds", "numpy pydantic yaml"),
-    "forecast": Room("campaign"),
+    "records": Room("", "numpy h5py"),
+    "forecast": Room("campaign records"),
     "plan": Room("campaign geometry forecast physics diagnostics", "numpy"),
     # computing, and what is kept of it
-    "records": Room("", "numpy h5py"),
     "chemistry": Room("campaign plan physics solution diagnostics records units", "numpy h5py pyscf scipy"),
     # making sense of it
     "curves": Room("units", "numpy scipy lmfit"),
@@ -46,8 +46,9 @@ HOUSE: dict[str, Room] = {
     ),
     "report": Room("analysis curves diagnostics records tables thresholds units", "numpy pandas matplotlib"),
     # running it
+    "handover": Room("records tables units", "numpy h5py pandas pyarrow xarray"),
     "execution": Room("analysis campaign chemistry diagnostics plan records report tables", "psutil yaml"),
-    "cli": Room("campaign diagnostics execution tables"),
+    "cli": Room("campaign diagnostics execution forecast handover tables"),
 }
 """Every part of the library, lowest first."""
 

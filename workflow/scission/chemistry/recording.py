@@ -110,7 +110,7 @@ def unconverged_message(solution: Solution) -> str:
 
 def inputs_of(task: dict[str, Any]) -> dict[str, Any]:
     """Return what was computed, readable: molecule, level, stretched bonds."""
-    names = ("molecule", "spec", "correlation", "frozen_core", "bonds")
+    names = ("molecule", "spec", "correlation", "frozen_core", "bonds", "calculation")
     return {name: task[name] for name in names if name in task}
 
 

@@ -84,7 +84,7 @@ def merge_chains(chains: Iterable[Chain]) -> list[Chain]:
     """
     groups: dict[str, list[Chain]] = {}
     for chain in chains:
-        identity = canonical([chain.molecule, chain.spec, chain.bonds, chain.fragments])
+        identity = canonical([chain.molecule, chain.spec, chain.bonds, chain.fragments, _shape(chain)])
         groups.setdefault(identity, []).append(chain)
     return [_merged(group) if len(group) > 1 else group[0] for group in groups.values()]
 
@@ -101,6 +101,16 @@ def _nodes(facts: dict[str, Any], spec: dict[str, Any], path: ScanPath, auxiliar
     keys = reference_keys(facts, spec, path.bonds, path.positions)
     lengths = path.values[:, 0].tolist()
     return [Node(*item, auxiliary) for item in zip(keys, lengths, path.positions, strict=True)]
+
+
+def _shape(chain: Chain) -> list[Any]:
+    """Return what a rigid stretch leaves as it is: each fragment's positions from its first atom, bohr.
+
+    Isomers and conformers with the same atoms and bond differ in nothing else.
+    """
+    positions = chain.nodes[0].positions
+    parts = [positions[list(f)] - positions[f[0]] for f in chain.fragments if f]
+    return [(np.round(part, 6) + 0.0).tolist() for part in parts]
 
 
 def _ordered(chain: Chain, equilibrium: float) -> Chain:
