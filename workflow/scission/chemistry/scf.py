@@ -89,6 +89,8 @@ def polish(field: Any) -> Any:
     The hole of a far atom can stay tilted against the bond at a cost of 1e-8 hartree: far below the energy
     tolerance, but coupled cluster on such orbitals need not converge.  What does not get tighter stays as it is.
     """
+    if not has_rotations(field):
+        return field
     finer = second_order(field.copy(), field.mo_coeff, field.mo_occ, _POLISHED)
     if finer.e_tot > field.e_tot + ENERGY_TOLERANCE:
         return field
