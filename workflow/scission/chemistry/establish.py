@@ -13,7 +13,7 @@ from . import scf
 from .bond_picture import describe_active_bond
 from .casscf import finish_casscf, solve_casscf
 from .compare import likeness
-from .molecule import build_mole
+from .molecule import build_mole, overlap_roots
 from .orbitals import Orbitals, not_orthonormal
 from .pictures import PICTURE_FUNCTIONS, solve_picture
 from .recording import Stopwatch, guarded, record_of
@@ -112,8 +112,7 @@ def _closest_determinant(record: Record, mole: Any) -> np.ndarray:
 
 
 def _keep_orbitals(solution: Solution) -> None:
-    values, vectors = np.linalg.eigh(solution.overlap)
-    root = (vectors * np.sqrt(values.clip(0.0))) @ vectors.T
+    root, _ = overlap_roots(solution.overlap)
     kept = Orbitals(solution.mo_coeff, solution.mo_occ).transformed(root)
     solution.extra |= {"mo_lowdin": kept.coeff, "mo_occ": kept.occ}
 

@@ -43,7 +43,12 @@ def build_mole(facts: dict[str, Any], basis: dict[str, str], positions: NDArray[
 
 def root_overlap(mole: gto.Mole) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
     """Return S^1/2 and S^-1/2 of the basis functions, each (n_ao, n_ao)."""
-    values, vectors = np.linalg.eigh(mole.intor_symmetric("int1e_ovlp"))
+    return overlap_roots(mole.intor_symmetric("int1e_ovlp"))
+
+
+def overlap_roots(overlap: NDArray[np.float64]) -> tuple[NDArray[np.float64], NDArray[np.float64]]:
+    """Return S^1/2 and S^-1/2 of an overlap matrix, each (n_ao, n_ao)."""
+    values, vectors = np.linalg.eigh(overlap)
     roots = np.sqrt(np.maximum(values, 1e-14))
     return (vectors * roots) @ vectors.T, (vectors / roots) @ vectors.T
 

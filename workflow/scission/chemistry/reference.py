@@ -20,6 +20,8 @@ from .orbitals import Orbitals, state_overlap_any_spin
 
 _SAME_ENERGY = 1e-7
 _DISTINCT = 1e-4
+_ALIKE = 0.9
+"""Below this overlap with the orbitals it was started from a determinant is another state."""
 UNRESTRICTED = ("UHF", "UKS")
 
 
@@ -84,7 +86,7 @@ def _from_parent(task: dict[str, Any], mole: gto.Mole, parent: Record, remedy: s
     spec = task["spec"]
     start = carried(parent, mole)
     field = scf.converge(scf.build_field(mole, spec), _spin_density(spec, start), remedy)
-    if task.get("choose") != "first" or _likeness(field, start, mole) >= task.get("alike", 0.9):
+    if task.get("choose") != "first" or _likeness(field, start, mole) >= _ALIKE:
         return field
     near = scf.second_order(scf.build_field(mole, spec), *_as_engine(spec, start))
     if near.converged and (

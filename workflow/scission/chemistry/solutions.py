@@ -7,7 +7,6 @@ from typing import Any
 
 import numpy as np
 from pyscf import gto
-from pyscf.lib import current_memory
 
 from scission.solution import Solution
 
@@ -77,11 +76,6 @@ def dipole_moment(field: Any, density: Any = None) -> Any:
     density = density.sum(axis=0) if np.ndim(density) == 3 else density
     nuclear = charges @ (mole.atom_coords() - centre)
     return nuclear - np.einsum("xij,ji->x", integrals, density)
-
-
-def peak_memory_mb() -> float:
-    """Return the resident memory of this process, MB."""
-    return float(current_memory()[0])
 
 
 def _diagnose(field: Any, solution: Solution) -> None:

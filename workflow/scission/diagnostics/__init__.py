@@ -6,7 +6,7 @@ Contract for a new member
    docstring states formula, unit, shapes, source.  It must not depend on the phases or order of degenerate
    orbitals, must be finite, and must say itself (``Absent(reason)``) when it is not meaningful for the
    solution it is given: it never returns zero for "unknown" and never raises for a valid solution.
-2. Add a :class:`Diagnostic` to ``DIAGNOSTICS`` below.  The key is the name used in records and tables.
+2. Add a :class:`Diagnostic` to ``DIAGNOSTICS`` in ``registry.py``.  The key is the name used in records and tables.
 3. If it has a published threshold, add it to :mod:`scission.thresholds`, with its source, and say in
    :mod:`scission.thresholds.rule` what it weighs.
 4. If it needs a calculation of its own, name that in ``calculation``, enter it in ``CALCULATIONS`` with its

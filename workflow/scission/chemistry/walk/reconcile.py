@@ -71,15 +71,12 @@ def _describe(state: ChainState, a: Node, b: Node) -> dict[str, Any]:
         "to_angstrom": b.coordinate,
         "overlap": state.overlap(a, b),
         "energy_step_hartree": step,
-        "what": _what(state, a, b),
+        "what": _what(state),
     }
 
 
-def _what(state: ChainState, a: Node, b: Node) -> str:
+def _what(state: ChainState) -> str:
     """Return in words what is different on the two sides."""
-    first, second = state.record(a), state.record(b)
-    assert first is not None
-    assert second is not None
     if state.active:
         return "orbitals enter or leave the active space"
     if state.unrestricted:
