@@ -18,6 +18,7 @@ from . import scf
 from .molecule import build_mole
 from .recording import Stopwatch
 from .reference import carried
+from .stability import triplet_instability
 
 TOLERANCE_ANGSTROM = 1e-4
 SCALAR = "coulson_fischer"
@@ -78,4 +79,4 @@ def _eigenvalue(task: dict[str, Any], parent: Record, positions: np.ndarray) -> 
     field = scf.converge(scf.build_field(mole, task["spec"]), carried(parent, mole).density())
     if not field.converged:
         raise _LostError("a determinant in between did not converge")
-    return scf.triplet_stability(field)
+    return triplet_instability(field)[0]

@@ -8,6 +8,7 @@ from __future__ import annotations
 
 from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
+from functools import lru_cache
 from itertools import product
 from typing import Any
 
@@ -17,6 +18,7 @@ from pyscf import gto
 from pyscf.gto.mole import ao_rotation_matrix, charge
 from pyscf.scf import uhf
 
+from .integrals import share
 from .molecule import build_mole
 from .scf import MAX_CYCLES
 
@@ -28,10 +30,12 @@ _ORIENTATIONS = 9
 _SAME_SCORE = 1e-8
 _WORTH_TRYING = 0.25
 """Splits this far (hartree) above the lowest one, the attraction of charges included, are not tried."""
+_SHAPE_DIGITS = 7
+"""Fragments whose atoms lie this alike (decimals of a bohr) are the same fragment: they only start things."""
 _AXIS_CYCLES = tuple(np.roll(np.eye(3), k, axis=0) for k in range(3))
 
 
-@dataclass
+@dataclass(frozen=True)
 class FragmentState:
     """A fragment by itself: charge, unpaired electrons, energy and densities (2, n_ao, n_ao)."""
 
@@ -68,7 +72,7 @@ def fragment_densities(
     does not tell which is lowest (F2: the hole of one atom along, that of the other across the bond).
     """
     mole = build_mole(facts, basis, positions)
-    field = uhf.UHF(mole)
+    field = share(uhf.UHF(mole))
     for number, split in enumerate(promising_splits(facts, basis, positions, fragments)):
         options = [
             _orientations(facts, basis, atoms, s, axis)
@@ -161,15 +165,30 @@ def _fragment_state(
     q: int,
     unpaired: int,
 ) -> FragmentState | None:
-    """Return a fragment's unrestricted solution, or ``None`` if it does not converge well enough to start from."""
-    part = {"symbols": [facts["symbols"][a] for a in atoms], "charge": q, "multiplicity": unpaired + 1}
-    mole = build_mole(part, basis, positions[list(atoms)])
+    """Return a fragment's unrestricted solution, or ``None`` if its electrons do not fit its basis."""
+    symbols = tuple(facts["symbols"][a] for a in atoms)
+    shape = np.round(positions[list(atoms)] - positions[atoms[0]], _SHAPE_DIGITS) + 0.0
+    names = tuple((s, basis[s]) for s in sorted(set(symbols)))
+    return _alone(symbols, names, tuple(map(tuple, shape.tolist())), q, unpaired)
+
+
+@lru_cache(maxsize=128)
+def _alone(
+    symbols: tuple[str, ...],
+    basis: tuple[tuple[str, str], ...],
+    shape: tuple[tuple[float, ...], ...],
+    q: int,
+    unpaired: int,
+) -> FragmentState | None:
+    """Return the same for positions counted from the fragment's first atom: it is alike at every length."""
+    part = {"symbols": list(symbols), "charge": q, "multiplicity": unpaired + 1}
+    mole = build_mole(part, dict(basis), np.array(shape))
     n = mole.nao
     if mole.nelectron == 0:
         return FragmentState(q, unpaired, float(mole.energy_nuc()), np.zeros((2, n, n)))
     if max(mole.nelec) > n or min(mole.nelec) < 0:
         return None
-    field = uhf.UHF(mole)
+    field = share(uhf.UHF(mole))
     field.conv_tol, field.max_cycle, field.chkfile = 1e-7, MAX_CYCLES, None
     field.kernel()
     return FragmentState(q, unpaired, float(field.e_tot), np.asarray(field.make_rdm1()))

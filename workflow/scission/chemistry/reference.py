@@ -20,8 +20,12 @@ from .orbitals import Orbitals, state_overlap_any_spin
 
 _SAME_ENERGY = 1e-7
 _DISTINCT = 1e-4
+_HOPELESS = 0.1
+"""Solutions this far (hartree) above the lowest one from fragments are not worth converging."""
 _ALIKE = 0.9
 """Below this overlap with the orbitals it was started from a determinant is another state."""
+_FLAT = 0.01
+"""Below this curvature (hartree) an orbital's rotation costs so little that it may not have converged."""
 UNRESTRICTED = ("UHF", "UKS")
 
 
@@ -29,8 +33,9 @@ def solve_reference(task: dict[str, Any], store: Store) -> tuple[Any, gto.Mole, 
     """Return (field, molecule, remark) of the start that fits the task best.
 
     ``task["starts"]`` lists the starts, each a mapping with one of the keys ``carry`` (key of a finished
-    record whose orbitals are carried here), ``engine`` (one of the engine's own guesses), ``broken`` (along
-    the triplet instability of the restricted determinant), ``fragments`` (all splits of the fragments).
+    record whose orbitals are carried here), ``standing`` (the record that is there already, as it is),
+    ``engine`` (one of the engine's own guesses), ``broken`` (along the triplet instability of the restricted
+    determinant), ``fragments`` (all splits of the fragments).
     ``task["choose"]`` is ``first`` (the first start that converges, else the lowest) or ``lowest``;
     ``task["stability"]`` asks to follow internal instabilities of the one that was chosen, and
     ``task["polish"]`` to turn it along its flattest directions as well.
@@ -46,8 +51,8 @@ def solve_reference(task: dict[str, Any], store: Store) -> tuple[Any, gto.Mole, 
     if best is None:
         raise RuntimeError("no start was given from which the reference could be computed")
     if task.get("stability") and best.converged:
-        best = _stable(best)
-        if task.get("polish"):
+        best, flattest = _stable(best)
+        if task.get("polish") and flattest < _FLAT:
             best = scf.polish(best)
     return best, mole, remark
 
@@ -71,6 +76,14 @@ def candidates(task: dict[str, Any], store: Store, mole: gto.Mole) -> Iterator[t
             parent = store.read("reference", start["carry"])
             if parent is not None and parent.status == "converged":
                 yield f"carried from {parent.key}", _from_parent(task, mole, parent, remedy)
+        elif start.get("standing"):
+            own = store.read("reference", task["key"])
+            if own is not None and own.status == "converged":
+                field = scf.build_field(mole, spec)
+                yield (
+                    own.notes.get("start", ""),
+                    scf.put_orbitals(field, carried(own, mole), float(own.scalars["energy"])),
+                )
         elif "engine" in start:
             field = scf.build_field(mole, spec)
             density = scf.default_density(field, start["engine"])
@@ -113,44 +126,48 @@ def _broken(spec: dict[str, Any], mole: gto.Mole) -> Iterator[tuple[str, Any]]:
 
 
 def _from_fragments(task: dict[str, Any], mole: gto.Mole, remedy: str) -> Iterator[tuple[str, Any]]:
-    for label, density in _split_densities(task):
+    for label, density in _screened(task, mole):
         field = scf.build_field(mole, task["spec"])
         yield label, scf.converge(field, density, remedy)
 
 
-def _split_densities(task: dict[str, Any]) -> Iterator[tuple[str, Any]]:
-    """Yield the fragments' densities; for Kohn-Sham those of Hartree-Fock started from them.
+def _screened(task: dict[str, Any], mole: gto.Mole) -> Iterator[tuple[str, Any]]:
+    """Yield densities that start from the fragments, of distinct solutions only, lowest first.
 
-    Hartree-Fock finds the states of a broken bond at a tenth of the cost, and only distinct ones go on.
+    Roughly converged Hartree-Fock tells them apart at a fraction of the cost, for Kohn-Sham at a tenth.
     """
     positions = np.array(task["positions"])
     a, b = task["bonds"][0]
     basis, axis = task["spec"]["basis"], positions[b] - positions[a]
-    found = fragment_densities(task["molecule"], basis, positions, task["fragments"], axis)
-    if not task["spec"].get("functional"):
-        yield from found
-        return
     plain = {**task["spec"], "reference": "UHF", "functional": None}
-    mole = build_mole(task["molecule"], basis, positions)
-    fields = [(label, scf.converge(scf.build_field(mole, plain), density)) for label, density in found]
+    rough: list[tuple[float, str, Any]] = []
+    for label, density in fragment_densities(task["molecule"], basis, positions, task["fragments"], axis):
+        field = scf.roughly(scf.build_field(mole, plain), density)
+        rough.append((field.e_tot, label, np.asarray(field.make_rdm1())))
     known: list[float] = []
-    for label, field in sorted(fields, key=lambda f: f[1].e_tot):
-        if field.converged and not any(abs(field.e_tot - e) < _DISTINCT for e in known):
-            known.append(field.e_tot)
-            yield label, np.asarray(field.make_rdm1())
+    for energy, label, density in sorted(rough, key=lambda r: r[0]):
+        if (
+            not any(abs(energy - e) < _DISTINCT for e in known)
+            and energy < (known or [energy])[0] + _HOPELESS
+        ):
+            known.append(energy)
+            yield label, density
 
 
-def _stable(field: Any) -> Any:
-    """Follow internal instabilities; of equal alpha and beta orbitals those that make them differ."""
+def _stable(field: Any) -> tuple[Any, float]:
+    """Follow internal instabilities; of equal alpha and beta orbitals those that make them differ.
+
+    Returns the field and the lowest eigenvalue of its orbital Hessian, hartree.
+    """
     if not _equal_spins(field):
         return scf.follow_instability(field)
     start = scf.broken_symmetry_start(scf.closed_shell_twin(field))
     if start is None:
-        return field
+        return field, np.inf
     lower = scf.second_order(field.copy(), start.coeff, start.occ)
     if lower.converged and lower.e_tot < field.e_tot - _SAME_ENERGY:
         return scf.follow_instability(lower)
-    return field
+    return field, np.inf
 
 
 def _equal_spins(field: Any) -> bool:

@@ -7,11 +7,18 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 from pyscf import dft, gto
-from pyscf.lib import davidson1
-from pyscf.scf import hf, rohf, stability, uhf
+from pyscf.scf import hf, rohf, uhf
 
 from .degenerate import settle_degenerate
+from .integrals import share
 from .orbitals import Orbitals
+from .stability import (
+    UNSTABLE,
+    internal_instability,
+    triplet_instability,
+    turned_along,
+    unrestricted_along,
+)
 
 Array = NDArray[np.float64]
 
@@ -19,6 +26,9 @@ ENERGY_TOLERANCE = 1e-10
 GRADIENT_TOLERANCE = 1e-6
 _POLISHED = 1e-8
 MAX_CYCLES = 60
+_ROUGH = 1e-5, 1e-2
+"""Changes of energy (hartree) and gradients at which a field is good enough to be told from others."""
+
 _SECOND_ORDER_CYCLES = 60
 _FOLLOWED = 5
 """How often an instability is followed at most; two or three were the most seen."""
@@ -42,7 +52,7 @@ def build_field(mole: gto.Mole, spec: dict[str, Any]) -> Any:
     field.conv_tol_grad = GRADIENT_TOLERANCE
     field.max_cycle = MAX_CYCLES
     field.chkfile = None
-    return field
+    return share(field)
 
 
 def converge(field: Any, density: Array | None, remedy: str = "") -> Any:
@@ -69,6 +79,13 @@ def converge(field: Any, density: Array | None, remedy: str = "") -> Any:
     return second_order(field, field.mo_coeff, field.mo_occ)
 
 
+def roughly(field: Any, density: Array) -> Any:
+    """Iterate a throw-away field from a density until its energy is good to about 1e-5 hartree."""
+    field.conv_tol, field.conv_tol_grad = _ROUGH
+    field.kernel(dm0=density)
+    return field
+
+
 def second_order(field: Any, coeff: Array, occ: Array, gradient: float = GRADIENT_TOLERANCE) -> Any:
     """Converge with the second-order solver from orbitals; it stays near where it starts."""
     solver = field.newton()
@@ -89,8 +106,6 @@ def polish(field: Any) -> Any:
     The hole of a far atom can stay tilted against the bond at a cost of 1e-8 hartree: far below the energy
     tolerance, but coupled cluster on such orbitals need not converge.  What does not get tighter stays as it is.
     """
-    if not has_rotations(field):
-        return field
     finer = second_order(field.copy(), field.mo_coeff, field.mo_occ, _POLISHED)
     if finer.e_tot > field.e_tot + ENERGY_TOLERANCE:
         return field
@@ -109,22 +124,25 @@ def has_rotations(field: Any) -> bool:
     return any(bool(np.any(o > 0.5) and np.any(o < 0.5)) for o in occ)
 
 
-def follow_instability(field: Any) -> Any:
-    """Follow internal instabilities until none is left, five times at most; return the lowest field.
+def follow_instability(field: Any) -> tuple[Any, float]:
+    """Follow internal instabilities until none is left, five times at most.
 
-    Three eigenvalues of the stability matrix are sought: with one alone, families of solutions were missed.
+    Returns:
+        The lowest field and the last eigenvalue of its orbital Hessian that was looked at, hartree
+        (infinite where no orbital can turn).
     """
+    lowest = np.inf
     for _ in range(_FOLLOWED):
         if not field.converged or not has_rotations(field):
-            return field
-        coeff, _, stable, _ = field.stability(internal=True, external=False, return_status=True)
-        if stable:
-            return field
-        lower = second_order(field.copy(), np.asarray(coeff), field.mo_occ)
+            break
+        lowest, vector = internal_instability(field)
+        if lowest > UNSTABLE:
+            break
+        lower = second_order(field.copy(), turned_along(field, vector), field.mo_occ)
         if not lower.converged or lower.e_tot > field.e_tot - 1e-8:
-            return field
+            break
         field = lower
-    return field
+    return field, lowest
 
 
 def broken_symmetry_start(restricted: Any) -> Orbitals | None:
@@ -134,11 +152,8 @@ def broken_symmetry_start(restricted: Any) -> Orbitals | None:
     """
     if is_restricted_open(restricted) or not restricted.converged or not has_rotations(restricted):
         return None
-    coeff, stable = stability.rhf_external(restricted, return_status=True)
-    if stable:
-        return None
-    half = restricted.mo_occ / 2.0
-    return Orbitals(np.array(coeff), np.array([half, half]))
+    value, vector = triplet_instability(restricted)
+    return unrestricted_along(restricted, vector) if value < UNSTABLE else None
 
 
 def closed_shell_twin(field: Any) -> Any:
@@ -150,33 +165,10 @@ def closed_shell_twin(field: Any) -> Any:
     else:
         twin = hf.RHF(mole)
     twin.chkfile = None
+    share(twin)
     twin.mo_coeff, twin.mo_energy = field.mo_coeff[0], field.mo_energy[0]
     twin.mo_occ, twin.e_tot, twin.converged = field.mo_occ[0] * 2, field.e_tot, field.converged
     return twin
-
-
-def triplet_stability(field: Any) -> float:
-    """Return the lowest eigenvalue of the triplet stability matrix of a closed-shell determinant, hartree.
-
-    Negative: an unrestricted solution lies lower.  Seeger and Pople, J. Chem. Phys. 66, 3045 (1977).
-    Several starting vectors along the smallest diagonal elements keep the search from missing a symmetry.
-    """
-    _, _, times, diagonal = stability._gen_hop_rhf_external(field)
-
-    def precondition(residual: Array, eigenvalue: float, _: Array) -> Array:
-        shift = diagonal - eigenvalue
-        shift[np.abs(shift) < 1e-8] = 1e-8
-        return residual / shift
-
-    starts = [1.0 / np.maximum(diagonal, 1e-2)]
-    for i in np.argsort(diagonal)[:3]:
-        unit = np.zeros_like(diagonal)
-        unit[i] = 1.0
-        starts.append(unit)
-    _, values, _ = davidson1(
-        lambda xs: [times(x) for x in xs], starts, precondition, nroots=1, tol=1e-8, max_cycle=80, verbose=0
-    )
-    return float(values[0])
 
 
 def orbitals_of(field: Any) -> Orbitals:

@@ -15,6 +15,7 @@ from .bond_orders import mayer_orders
 from .ci_vectors import VectorFacts
 from .molecule import root_overlap
 from .orbitals import natural_occupations
+from .stability import triplet_instability
 
 
 def solution_of_field(
@@ -82,7 +83,7 @@ def _diagnose(field: Any, solution: Solution) -> None:
     """Add stability and natural occupations where the kind of reference defines them."""
     if solution.reference in ("RHF", "RKS") and field.converged and field.mol.nelectron > 0:
         has_virtuals = np.any(solution.mo_occ == 0)
-        solution.triplet_stability = scf.triplet_stability(field) if has_virtuals else None
+        solution.triplet_stability = triplet_instability(field)[0] if has_virtuals else None
     if solution.reference in ("UHF", "UKS"):
         root, _ = root_overlap(field.mol)
         density = np.asarray(field.make_rdm1()).sum(axis=0)

@@ -49,7 +49,7 @@ def _follow_instabilities(state: ChainState) -> set[str]:
         if not state.good(node) or not state.unproven(node) or (state.kohn_sham and node.key not in rough):
             continue
         before = state.energy(node)
-        state.solve(node, [{"carry": node.key}], choose="lowest", replace="lower", stability=True)
+        state.solve(node, [{"standing": True}], choose="lowest", replace="lower", stability=True)
         if state.energy(node) < before - LOWER:
             lowered.add(node.key)
         state.prove(node)
