@@ -2,8 +2,9 @@
 
 import numpy as np
 import pytest
-from chemistry_support import Bench, diatomic
+from chemistry_support import Bench, diatomic, task
 from pyscf import cc, gto, mp, scf
+from scission.chemistry import amplitudes
 
 ORIGIN = [[0.0, 0.0, 0.0]]
 
@@ -137,3 +138,22 @@ def test_triplet_stability_is_the_closed_form_of_the_minimal_basis(bench):
 
     assert ratios == pytest.approx([ratios[0]] * 3, rel=1e-6)
     assert ratios[0] > 0.0
+
+
+def test_levels_of_a_geometry_share_their_amplitudes(bench, monkeypatch):
+    """CCSD(T) after CCSD starts from its amplitudes: few iterations, and the energy it has by itself."""
+    f2 = task("r0001", *diatomic("F", "F", 2.7), basis="6-31g")
+    bench.run(f2)
+    cycles = []
+    update = cc.ccsd.CCSD.update_amps
+    monkeypatch.setattr(cc.ccsd.CCSD, "update_amps", lambda self, *a: cycles.append(1) or update(self, *a))
+    amplitudes._memory.clear()
+    alone = bench.correlate(f2, "CCSD(T)", frozen_core=True)
+    by_itself = len(cycles)
+    amplitudes._memory.clear()
+    bench.correlate(f2, "CCSD", frozen_core=True)
+    cycles.clear()
+    after = bench.correlate(f2, "CCSD(T)", frozen_core=True)
+
+    assert 0 < len(cycles) < by_itself / 2
+    assert after.scalars["energy"] == pytest.approx(alone.scalars["energy"], abs=1e-8)

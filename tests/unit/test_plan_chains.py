@@ -8,6 +8,7 @@ from campaigns import changed, load
 from hypothesis import given
 from hypothesis import strategies as st
 from scission.geometry import build_path
+from scission.plan import make_plan
 from scission.plan.chains import auxiliary_lengths, build_chain, merge_chains
 
 EQUILIBRIUM = 0.74
@@ -87,3 +88,20 @@ def test_other_references_have_chains_of_their_own(tmp_path):
     other = replace(one, spec={**one.spec, "basis": {"H": "sto-3g"}})
 
     assert len(merge_chains([one, other])) == 2
+
+
+def test_levels_on_the_same_references_share_their_blocks(tmp_path):
+    """CCSD and CCSD(T) on one reference are computed geometry by geometry in the same jobs; others are not."""
+    levels = {
+        "cc": {"reference": "RHF", "correlation": "CCSD(T)", "basis": "cc-pVDZ"},
+        "cs": {"reference": "RHF", "correlation": "CCSD", "basis": "cc-pVDZ"},
+        "uc": {"reference": "UHF", "correlation": "CCSD", "basis": "cc-pVDZ"},
+    }
+    stretch = {"bond": ["H1", "H2"], "lengths": [0.6, 0.8, 1.0]}
+    scan = {"molecule": "hydrogen", "levels": list(levels), "stretch": stretch}
+    campaign = load(changed(("levels", levels), ("scans", {"hh": scan})), tmp_path)
+    blocks = [j.payload["points"] for j in make_plan(campaign).jobs if j.stage == "correlate"]
+    together = [[(item["number"], item["level"]) for item in block] for block in blocks]
+
+    assert [(1, "cc"), (1, "cs"), (2, "cc"), (2, "cs"), (3, "cc"), (3, "cs")] in together
+    assert [(1, "uc"), (2, "uc"), (3, "uc")] in together

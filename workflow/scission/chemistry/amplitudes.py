@@ -9,17 +9,20 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
+from scission.records.store import Record
+
 from .molecule import root_overlap
 
 Array = NDArray[np.float64]
 
-_KEPT = 4
-"""Sets of amplitudes kept in this process: neighbours of a scan ask for the same ones one after another."""
+_KEPT_BYTES = 256e6
+"""Amplitudes kept in this process: levels of a geometry and neighbours of a scan ask for the same ones one
+after another.  The latest ones are kept whatever their size."""
 
 _RANK = 6
 """Natural orbitals of the amplitudes that are kept for comparison: a bond needs three at most, each spin."""
 
-_memory: OrderedDict[tuple[str, int], Amplitudes] = OrderedDict()
+_memory: OrderedDict[tuple[str, str, int], Amplitudes] = OrderedDict()
 
 
 @dataclass
@@ -27,13 +30,20 @@ class Amplitudes:
     """Amplitudes with the orbitals they belong to.
 
     ``occupied`` and ``virtual`` hold one array a spin (one for a closed shell), (n_ao, n) in
-    symmetrically orthogonalised basis functions; t1 and t2 are as the engine has them.
+    symmetrically orthogonalised basis functions; t1 and t2 are as the engine has them.  ``how`` says in words
+    what it took to find them, empty for the usual way.
     """
 
     occupied: tuple[Array, ...]
     virtual: tuple[Array, ...]
     t1: Any
     t2: Any
+    how: str = ""
+
+    @property
+    def nbytes(self) -> int:
+        """Memory of the doubles, the largest part."""
+        return sum(t.nbytes for t in (self.t2 if isinstance(self.t2, tuple) else (self.t2,)))
 
     def at(self, solver: Any) -> tuple[Any, Any]:
         """Return t1 and t2 turned to the orbitals of ``solver``, which belongs to a geometry near by."""
@@ -48,9 +58,9 @@ class Amplitudes:
         return t1, t2
 
 
-def amplitudes_of(solver: Any) -> Amplitudes:
+def amplitudes_of(solver: Any, how: str = "") -> Amplitudes:
     """Return the amplitudes of a converged solver with their orbitals."""
-    return Amplitudes(*_orbitals(solver), solver.t1, solver.t2)
+    return Amplitudes(*_orbitals(solver), solver.t1, solver.t2, how)
 
 
 def fingerprint(solver: Any) -> Array:
@@ -83,16 +93,21 @@ def _virtual_densities(t1: Any, t2: Any) -> list[Array]:
     return [singles[0] + alpha, singles[1] + beta]
 
 
-def remember(reference_key: str, frozen: int, amplitudes: Amplitudes) -> None:
-    """Keep amplitudes in this process; the oldest ones go."""
-    _memory[reference_key, frozen] = amplitudes
-    while len(_memory) > _KEPT:
+def remember(reference: Record, frozen: int, amplitudes: Amplitudes) -> None:
+    """Keep the amplitudes on a reference in this process; the oldest ones go."""
+    _memory[_name(reference, frozen)] = amplitudes
+    _memory.move_to_end(_name(reference, frozen))
+    while len(_memory) > 1 and sum(kept.nbytes for kept in _memory.values()) > _KEPT_BYTES:
         _memory.popitem(last=False)
 
 
-def recall(reference_key: str, frozen: int) -> Amplitudes | None:
-    """Return amplitudes kept in this process, or ``None``."""
-    return _memory.get((reference_key, frozen))
+def recall(reference: Record, frozen: int) -> Amplitudes | None:
+    """Return the amplitudes kept in this process for a reference as it stands, or ``None``."""
+    return _memory.get(_name(reference, frozen))
+
+
+def _name(reference: Record, frozen: int) -> tuple[str, str, int]:
+    return reference.key, reference.stamp, frozen
 
 
 def _orbitals(solver: Any) -> tuple[tuple[Array, ...], tuple[Array, ...]]:

@@ -47,7 +47,7 @@ def coupled_cluster(
     if how:
         solution.notes["amplitudes"] = how
     wanted = task["correlation"] == "CCSD(T)" and solver.converged
-    _complete(solution, solver, float(solver.ccsd_t()) if wanted else None)
+    _complete(solution, solver, float(solver.ccsd_t(eris=transformed(solver))) if wanted else None)
     return solution
 
 
@@ -62,6 +62,16 @@ def make_solver(field: Any, frozen: int) -> Any:
         MAX_CYCLES,
     )
     return solver
+
+
+def transformed(solver: Any) -> Any:
+    """Return the solver's integrals over its orbitals, transformed once for all that is done with them.
+
+    The engine by itself transforms them again for every call of iterations, triples or density.
+    """
+    if getattr(solver, "kept_integrals", None) is None:
+        solver.kept_integrals = solver.ao2mo(solver.mo_coeff)
+    return solver.kept_integrals
 
 
 def semicanonical(field: Any, frozen: int = 0) -> Any:
@@ -85,23 +95,35 @@ def semicanonical(field: Any, frozen: int = 0) -> Any:
 
 
 def solve(solver: Any, task: dict[str, Any], reference: Record, frozen: int, store: Store) -> str:
-    """Converge the amplitudes; return in words what it took, empty for the usual way."""
+    """Converge the amplitudes; return in words what it took, empty for the usual way.
+
+    Levels of one geometry that need the same amplitudes find those that the first of them left.
+    """
+    remedy = task.get("remedy", "")
+    known = None if remedy else recall(reference, frozen)
+    if known is not None and _iterate(solver, known.at(solver), {}):
+        return known.how
+    how = _search(solver, task, frozen, store)
+    if solver.converged and not _sound(solver):
+        solver.converged = False
+    if solver.converged:
+        remember(reference, frozen, amplitudes_of(solver, how))
+    return how
+
+
+def _search(solver: Any, task: dict[str, Any], frozen: int, store: Store) -> str:
+    """Try one way after another until the amplitudes converge; return the words of the last one."""
     remedy = task.get("remedy", "")
     if remedy in REMEDIES:
         _iterate(solver, None, REMEDIES[remedy])
-        how = remedy
-    elif remedy != "neighbour" and _iterate(solver, None, {}):
+        return remedy
+    if remedy != "neighbour" and _iterate(solver, None, {}):
         return ""
-    else:
-        start = _carried(task, frozen, store)
-        if start is not None and _iterate(solver, start.at(solver), DAMPED):
-            remember(reference.key, frozen, amplitudes_of(solver))
-            return "carried from the neighbour nearer to the equilibrium"
-        _iterate(solver, None, DAMPED)
-        how = "damped iterations"
-    if solver.converged and not _sound(solver):
-        solver.converged = False
-    return how
+    start = _carried(task, frozen, store)
+    if start is not None and _iterate(solver, start.at(solver), DAMPED):
+        return "carried from the neighbour nearer to the equilibrium"
+    _iterate(solver, None, DAMPED)
+    return "damped iterations"
 
 
 def _carried(task: dict[str, Any], frozen: int, store: Store) -> Amplitudes | None:
@@ -125,20 +147,19 @@ def _at_neighbour(
     """Return converged amplitudes at a neighbour, from ``start`` or by themselves; ``None`` if they do not."""
     from .correlate import prepared_field  # the two modules need each other
 
-    key = neighbour["reference_key"]
-    known = recall(key, frozen)
-    if known is not None:
-        return known
-    reference = store.read("reference", key)
+    reference = store.read("reference", neighbour["reference_key"])
     if reference is None or reference.status != "converged":
         return None
+    known = recall(reference, frozen)
+    if known is not None:
+        return known
     mole = build_mole(task["molecule"], task["spec"]["basis"], np.array(neighbour["positions"]))
     solver = make_solver(prepared_field(task, mole, reference), frozen)
     good = _iterate(solver, start.at(solver) if start else None, DAMPED if start else {})
     if not good:
         return None
     found = amplitudes_of(solver)
-    remember(key, frozen, found)
+    remember(reference, frozen, found)
     return found
 
 
@@ -148,7 +169,7 @@ def _iterate(solver: Any, start: tuple[Any, Any] | None, changes: dict[str, floa
     for name, value in changes.items():
         setattr(solver, name, value)
     try:
-        solver.kernel(*(start or (None, None)))
+        solver.kernel(*(start or (None, None)), eris=transformed(solver))
     except (AttributeError, np.linalg.LinAlgError):
         # the extrapolation meets linearly dependent vectors where amplitudes diverge
         solver.converged = False

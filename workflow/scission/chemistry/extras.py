@@ -18,7 +18,7 @@ from scission.records.store import Record, Store
 from scission.solution import Solution
 from scission.units import KELVIN_IN_HARTREE
 
-from .coupled_cluster import make_solver, solve
+from .coupled_cluster import make_solver, solve, transformed
 from .fragments import FragmentState, promising_splits
 from .molecule import build_mole
 from .solutions import solution_of_field
@@ -38,7 +38,7 @@ def ccsd_density(task: dict[str, Any], field: Any, reference: Record, frozen: in
     solve(solver, task, reference, frozen, store)
     solution.converged = bool(solver.converged)
     if solution.converged:
-        solver.solve_lambda()
+        solver.solve_lambda(eris=transformed(solver))
         solution.converged = bool(solver.converged_lambda)
         solution.cc_occupations = np.linalg.eigvalsh(solver.make_rdm1())[::-1].copy()
     return solution

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import heapq
 from collections import defaultdict
-from collections.abc import Iterator, Sequence
+from collections.abc import Iterable, Iterator, Sequence
 from dataclasses import dataclass, field
 from typing import TYPE_CHECKING, Any
 
@@ -122,11 +122,19 @@ def _parts(job: Job) -> Iterator[Part]:
     elif job.stage == "fragments":
         for item in job.payload["points"]:
             yield "fragments", 1, "fragment", fragment_seconds(item), item
-    else:  # a block holds points of one scan at one level: they cost the same
-        points = job.payload["points"]
-        method, each = expectation(points[0])
-        extra = f" ({points[0]['calculation']})" if "calculation" in points[0] else ""
-        yield f"{points[0]['level']}{extra}", len(points), method, each * len(points), points[0]
+    else:
+        for items in _alike(job.payload["points"]):
+            method, each = expectation(items[0])
+            extra = f" ({items[0]['calculation']})" if "calculation" in items[0] else ""
+            yield f"{items[0]['level']}{extra}", len(items), method, each * len(items), items[0]
+
+
+def _alike(points: Sequence[dict[str, Any]]) -> Iterable[list[dict[str, Any]]]:
+    """Return the points of a block by level: those of one scan at one level cost the same."""
+    levels: dict[tuple[str, str], list[dict[str, Any]]] = defaultdict(list)
+    for item in points:
+        levels[item["level"], item.get("calculation", "")].append(item)
+    return levels.values()
 
 
 def _nodes(chain: dict[str, Any], mended: bool) -> tuple[int, float]:

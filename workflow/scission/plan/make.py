@@ -2,9 +2,8 @@
 
 from __future__ import annotations
 
-import math
 from collections import defaultdict
-from collections.abc import Iterable, Sequence
+from collections.abc import Sequence
 from typing import Any
 
 from scission import forecast
@@ -12,10 +11,12 @@ from scission.campaign import Campaign, Level, Scan
 from scission.geometry import ScanPath, build_path, equilibrium_guess_angstrom
 from scission.physics import PHYSICS_VERSION
 
+from .blocks import correlate_jobs
 from .chains import build_chain, merge_chains, molecule_facts
 from .extras import add_extras
 from .fragments import fragment_work
-from .identity import canonical, digest, point_keys, reference_keys, reference_spec
+from .identity import canonical, point_keys, reference_keys, reference_spec
+from .jobs import make_job, unique
 from .stages import FEWEST_NODES, cut
 from .types import Chain, Job, Plan, Point
 from .write import campaign_digest
@@ -50,7 +51,7 @@ def make_plan(campaign: Campaign, block_seconds: float = BLOCK_SECONDS) -> Plan:
     owner = {
         key: job.id for job in jobs for key in job.payload["reference_keys"]
     }  # the last stage comes last
-    jobs += _correlate_jobs([w for w in work if w["correlation"] != "none"] + extra, owner, block_seconds)
+    jobs += correlate_jobs([w for w in work if w["correlation"] != "none"] + extra, owner, block_seconds)
     jobs += _fragment_jobs(campaign, points, owner)
     return Plan(
         campaign, tuple(points), tuple(jobs), PHYSICS_VERSION, campaign_digest(campaign, block_seconds)
@@ -130,20 +131,20 @@ def _reference_jobs(
     jobs: list[Job] = []
     for group in _sharing(chains):
         keys = list(dict.fromkeys(n.key for c in group for n in c.nodes))
-        published = _unique(item for key in keys for item in by_reference[key])
+        published = unique(item for key in keys for item in by_reference[key])
         needs: tuple[str, ...] = ()
         if len(group) == 1 and len(keys) >= FEWEST_NODES and _seconds(group[0]) > _COSTLY * block_seconds:
             spec = group[0].spec
             spine, blocks = cut(group[0], careful=spec["follow"] == "lowest" or spec["reference"] == "CASSCF")
-            jobs.append(_walk_job([spine.chain], spine.phase, (), []))
-            stages = [_walk_job([b.chain], b.phase, (jobs[-1].id,), []) for b in blocks]
+            jobs.append(_walkmake_job([spine.chain], spine.phase, (), []))
+            stages = [_walkmake_job([b.chain], b.phase, (jobs[-1].id,), []) for b in blocks]
             jobs += stages
             needs = tuple(job.id for job in stages)
-        jobs.append(_walk_job(group, "whole", needs, published))
+        jobs.append(_walkmake_job(group, "whole", needs, published))
     return jobs
 
 
-def _walk_job(
+def _walkmake_job(
     chains: Sequence[Chain], phase: str, needs: tuple[str, ...], published: list[dict[str, Any]]
 ) -> Job:
     """Return the job that walks some chains, or parts of one."""
@@ -155,40 +156,11 @@ def _walk_job(
         "reference_keys": keys,
         "publish": published,
     }
-    return _job("reference", chains[0].name, needs, payload, len(keys), seconds, memory)
+    return make_job("reference", chains[0].name, needs, payload, len(keys), seconds, memory)
 
 
 def _seconds(chain: Chain) -> float:
     return forecast.reference_seconds(chain.molecule, chain.spec) * len(chain.nodes)
-
-
-def _correlate_jobs(work: Sequence[dict[str, Any]], owner: dict[str, str], block_seconds: float) -> list[Job]:
-    """Return blocks of consecutive points of a scan at one level, sized by the forecast."""
-    groups: dict[tuple[str, ...], list[dict[str, Any]]] = defaultdict(list)
-    for item in _unique(work):
-        extra = (item["calculation"],) if "calculation" in item else ()
-        groups[item["scan"], item["level"], *extra].append(item)
-    jobs = []
-    for group, items in groups.items():
-        seconds = forecast.correlate_seconds(items[0])
-        size = max(1, math.floor(block_seconds / seconds))
-        n_blocks = math.ceil(len(items) / size)
-        for b in range(n_blocks):
-            block = items[b * len(items) // n_blocks : (b + 1) * len(items) // n_blocks]
-            needs = tuple(dict.fromkeys(owner[i["reference_key"]] for i in block))
-            memory = forecast.correlate_memory_mb(block[0])
-            jobs.append(
-                _job(
-                    "correlate",
-                    ".".join(group),
-                    needs,
-                    {"points": block},
-                    len(block),
-                    seconds * len(block),
-                    memory,
-                )
-            )
-    return jobs
 
 
 def _fragment_jobs(campaign: Campaign, points: Sequence[Point], owner: dict[str, str]) -> list[Job]:
@@ -201,42 +173,8 @@ def _fragment_jobs(campaign: Campaign, points: Sequence[Point], owner: dict[str,
     for (scan, needs), items in groups.items():
         seconds = sum(forecast.fragment_seconds(item) for item in items)
         memory = max(forecast.correlate_memory_mb(item) for item in items)
-        jobs.append(_job("fragments", scan, needs, {"points": items}, len(items), seconds, memory))
+        jobs.append(make_job("fragments", scan, needs, {"points": items}, len(items), seconds, memory))
     return jobs
-
-
-def _job(
-    stage: str,
-    name: str,
-    needs: tuple[str, ...],
-    payload: dict[str, Any],
-    n: int,
-    seconds: float,
-    memory: float,
-) -> Job:
-    """Return a job whose name follows from its content, with room over its forecast time and memory."""
-    fingerprint = digest(canonical(_without_positions(payload)))[:10]
-    runtime = math.ceil(10 + forecast.MARGIN * seconds / 60.0)
-    label = name.split("+")[0]
-    return Job(f"{stage}.{label}.{fingerprint}", stage, needs, n, math.ceil(memory), runtime, payload)
-
-
-def _without_positions(payload: dict[str, Any]) -> dict[str, Any]:
-    """Return what names a job: keys cover molecules and geometries, and writing out all takes long."""
-    return {
-        name: [_lean(item) for item in content] if name in ("points", "publish", "chains") else content
-        for name, content in payload.items()
-    }
-
-
-def _lean(item: dict[str, Any]) -> dict[str, Any]:
-    covered = ("positions", "molecule", "spec") if "key" in item else ("positions",)
-    lean = {k: v for k, v in item.items() if k not in covered}
-    if "neighbours" in lean:
-        lean["neighbours"] = [n["reference_key"] for n in lean["neighbours"]]
-    if "nodes" in lean:
-        lean["nodes"] = [[n["key"], n["coordinate"], n["auxiliary"]] for n in lean["nodes"]]
-    return lean
 
 
 def _chain_payload(chain: Chain) -> dict[str, Any]:
@@ -272,7 +210,3 @@ def _sharing(chains: Sequence[Chain]) -> list[list[Chain]]:
         groups[number] = members
         group_of.update((node.key, number) for member in members for node in member.nodes)
     return list(groups.values())
-
-
-def _unique(items: Iterable[dict[str, Any]]) -> list[dict[str, Any]]:
-    return list({item["key"]: item for item in items}.values())
