@@ -1,7 +1,8 @@
 rule analyse:
     """Diagnostics against thresholds, onsets, fits; the tables and the list of failures."""
     input:
-        "campaign.h5",
+        jobs=summaries,
+        campaign="plan/campaign.yaml",
     output:
         "tables/points.csv",
         "failures.csv",

@@ -1,8 +1,7 @@
 rule gather:
     """All records of the campaign in one self-describing file."""
     input:
-        jobs=summaries,
-        campaign="plan/campaign.yaml",
+        "tables/points.csv",
     output:
         "campaign.h5",
     log:

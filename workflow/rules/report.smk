@@ -1,7 +1,7 @@
 rule report:
     """Pictures of all scans and the page to look at."""
     input:
-        "campaign.h5",
+        "tables/points.csv",
     output:
         "report.html",
         "summary.txt",

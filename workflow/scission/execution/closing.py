@@ -1,4 +1,4 @@
-"""The steps after the calculations: gather, tables, report; none of them computes chemistry."""
+"""The steps after the calculations: tables, gather, report; none of them computes chemistry."""
 
 from __future__ import annotations
 
@@ -8,18 +8,18 @@ from collections.abc import Callable, Iterable
 from pathlib import Path
 from typing import Any
 
-from scission.analysis import Analysis, analyse
+from scission.analysis import Analysis, analyse, hand_on, take_over
 from scission.analysis.amplitudes import amplitude_steps
 from scission.campaign import load_campaign
 from scission.diagnostics import DIAGNOSTICS
 from scission.execution.layout import Layout, read_json
+from scission.execution.recheck import seal, unseal
 from scission.execution.remedies import next_remedy
 from scission.plan import Point, make_plan
 from scission.records import Store
 from scission.records.atomic import write_whole
 from scission.records.gather import gather
 from scission.report import summary_text, write_report
-from scission.tables import write_tables
 
 _TOLD = ("from_angstrom", "to_angstrom", "overlap", "energy_step_hartree", "what")
 
@@ -35,29 +35,35 @@ def run_step(description: str | None, step: Callable[[Path, Path], None]) -> Non
     step(arguments.campaign, arguments.results.absolute())
 
 
-def gather_campaign(campaign_file: Path, folder: Path) -> None:
-    """Write campaign.h5 below ``folder`` (results/<campaign>).
-
-    Raises:
-        CampaignError: the campaign file has become wrong since the plan was made.
-        OSError: a record cannot be read, or the file not be written.
-    """
-    points, analysis = _analysed(campaign_file, folder)
-    out = folder / "campaign.h5"
-    gather(points, Store(folder), out, analysis.provenance, DIAGNOSTICS, analysis.flags)
-
-
 def tabulate_campaign(campaign_file: Path, folder: Path) -> None:
-    """Write tables/ and failures.csv below ``folder``; tell when records of different make are mixed.
+    """Write tables/ and failures.csv below ``folder`` (results/<campaign>); tell when records are of different make.
+
+    The other two steps take these tables over: a campaign is analysed once.
 
     Raises:
         CampaignError: the campaign file has become wrong since the plan was made.
         OSError: a record cannot be read, or a table not be written.
     """
-    _, analysis = _analysed(campaign_file, folder)
-    write_tables(analysis.frames, folder)
+    analysis = _analysed(campaign_file, folder)
+    hand_on(analysis, folder)
     for line in analysis.mixed:
         print(f"mixed records: {line}", flush=True)
+
+
+def gather_campaign(campaign_file: Path, folder: Path) -> None:
+    """Write campaign.h5 and its checksum below ``folder``.
+
+    Raises:
+        CampaignError: the campaign file has become wrong since the plan was made.
+        FileNotFoundError: the tables have not been made.
+        OSError: a record cannot be read, or the file not be written.
+    """
+    campaign = load_campaign(campaign_file, DIAGNOSTICS)
+    analysis, out = take_over(campaign, folder), Layout(folder).gathered
+    unseal(out)
+    points = make_plan(campaign).points
+    gather(points, Store(folder), out, analysis.provenance, DIAGNOSTICS, analysis.flags)
+    seal(out)
 
 
 def show_campaign(campaign_file: Path, folder: Path) -> None:
@@ -65,14 +71,15 @@ def show_campaign(campaign_file: Path, folder: Path) -> None:
 
     Raises:
         CampaignError: the campaign file has become wrong since the plan was made.
-        OSError: a record cannot be read, or a file not be written.
+        FileNotFoundError: the tables have not been made.
+        OSError: a table cannot be read, or a file not be written.
     """
-    _, analysis = _analysed(campaign_file, folder)
+    analysis = take_over(load_campaign(campaign_file, DIAGNOSTICS), folder)
     write_report(analysis, folder)
     write_whole(Layout(folder).summary, summary_text(analysis, folder).encode("utf-8"))
 
 
-def _analysed(campaign_file: Path, folder: Path) -> tuple[tuple[Point, ...], Analysis]:
+def _analysed(campaign_file: Path, folder: Path) -> Analysis:
     campaign = load_campaign(campaign_file, DIAGNOSTICS)
     points = make_plan(campaign).points
     index = read_json(Layout(folder).plan / "plan.json") or {}
@@ -82,7 +89,7 @@ def _analysed(campaign_file: Path, folder: Path) -> tuple[tuple[Point, ...], Ana
     told = crossings(points, folder, jobs)
     for group, steps in amplitude_steps(points, store).items():
         told[group] = told.get(group, []) + steps
-    return points, analyse(points, campaign, store, facts, next_remedy, told)
+    return analyse(points, campaign, store, facts, next_remedy, told)
 
 
 def crossings(

@@ -65,6 +65,11 @@ class Layout:
         return self.folder / "logs" / "engine.log"
 
     @property
+    def gathered(self) -> Path:
+        """All records in one file."""
+        return self.folder / "campaign.h5"
+
+    @property
     def failures(self) -> Path:
         """List of the points without a good result."""
         return self.folder / "failures.csv"
