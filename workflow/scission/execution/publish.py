@@ -46,5 +46,10 @@ def _as_point(reference: Record, item: dict[str, Any]) -> Record:
 
 
 def _differs(present: Record, new: Record) -> bool:
-    mine = (present.status, present.reason, present.reference_stamp, present.attempts)
-    return mine != (new.status, new.reason, new.reference_stamp, new.attempts)
+    # Not the stamp alone: a later attempt may have added the diagnostics that an earlier one was killed in.
+    return _essence(present) != _essence(new)
+
+
+def _essence(record: Record) -> tuple[Any, ...]:
+    words = (record.status, record.reason, record.reference_stamp, record.attempts)
+    return *words, record.diagnostics, record.absent, record.notes, record.scalars.keys()
