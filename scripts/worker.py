@@ -9,6 +9,7 @@ import argparse
 import sys
 from pathlib import Path
 
+from scission.execution.storage import told_plainly
 from scission.execution.worker import Limits, run_job
 
 
@@ -28,7 +29,7 @@ def main() -> int:
     args = parser.parse_args()
     limits = Limits(args.mem_mb, args.runtime_min)
     last = args.attempt >= args.attempts
-    return run_job(args.results.absolute(), args.job, args.attempt, last, limits)
+    return told_plainly(lambda: run_job(args.results.absolute(), args.job, args.attempt, last, limits))
 
 
 if __name__ == "__main__":

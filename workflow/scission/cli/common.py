@@ -11,8 +11,10 @@ from scission.execution.layout import PROJECT, Layout
 if TYPE_CHECKING:
     from scission.campaign import Campaign
 
+FAULT = 1
 WRONG_INPUT = 2
 POINTS_FAILED = 3
+INTERRUPTED = 130
 DEMO = PROJECT / "config" / "demo.yaml"
 
 

@@ -20,6 +20,7 @@ from typing import IO, Any
 from scission.execution import drills
 from scission.execution.ledger import Ledger
 from scission.execution.processes import die_with_parent
+from scission.records.atomic import UnwritableError
 
 
 def load_runner(name: str) -> drills.Runner:
@@ -37,9 +38,14 @@ def load_runner(name: str) -> drills.Runner:
 
 def answer_task(task: dict[str, Any], folder: Path, runner: drills.Runner) -> dict[str, Any]:
     """Run one task; whatever it raises becomes an answer, since a failed calculation is a result."""
+    drills.journal(task, "start")
     try:
         drills.misbehave(drills.requested(task))
-        return {"answer": runner(task, Ledger(folder, task))}
+        answer = runner(task, Ledger(folder, task))
+        drills.journal(task, answer["status"])
+        return {"answer": answer}
+    except UnwritableError as error:  # says nothing about the calculation, so it must not become its result
+        return {"unwritable": [error.errno, error.strerror]}
     except Exception as error:
         traceback.print_exc()
         words = " ".join(f"{type(error).__name__}: {error}".split())

@@ -2,7 +2,8 @@
 
 None of this is reached in normal work.  ``RUNNERS`` holds task runners that take no chemistry; the
 variable SCISSION_DRILL, ``{"<key>": "raise" | "kill" | "hang" | "allocate" | "pause"}`` as JSON, makes the
-listed calculations misbehave in an otherwise normal run.
+listed calculations misbehave in an otherwise normal run.  SCISSION_DRILL_JOURNAL names a file in which every
+calculation then notes its start and its end, so that nothing that is computed twice goes unseen.
 """
 
 from __future__ import annotations
@@ -20,6 +21,7 @@ from scission.records.store import Record, Store
 Runner = Callable[[dict[str, Any], Store], dict[str, Any]]
 
 VARIABLE = "SCISSION_DRILL"
+JOURNAL = "SCISSION_DRILL_JOURNAL"
 PAUSE_S = 4.0
 
 
@@ -76,3 +78,17 @@ def requested(task: dict[str, Any]) -> str:
     """Return how the task shall misbehave according to SCISSION_DRILL, "" if not at all."""
     text = os.environ.get(VARIABLE, "")
     return json.loads(text).get(task.get("key"), "") if text else ""
+
+
+def journal(task: dict[str, Any], status: str) -> None:
+    """Add a line (kind, key, attempt, status) to the file that SCISSION_DRILL_JOURNAL names, if any.
+
+    The kind of a reference that is only tried to be improved says so: ``reference-lower`` and the like.
+    """
+    path = os.environ.get(JOURNAL)
+    if path:
+        kind = "-".join(filter(None, (task.get("kind"), task.get("replace"))))
+        with open(
+            path, "a", encoding="utf-8"
+        ) as handle:  # one short write: lines of several processes stay whole
+            handle.write(f"{kind} {task.get('key')} {task.get('attempt')} {status}\n")

@@ -10,6 +10,7 @@ from datetime import UTC, datetime
 from typing import Any
 
 from scission.execution.ledger import record_kind
+from scission.records.atomic import UnwritableError
 from scission.records.store import Record, Store
 
 RESOURCE_REASONS = frozenset({"time-limit", "memory-limit", "killed"})
@@ -26,7 +27,13 @@ class Outcome:
 
 
 def from_message(message: dict[str, Any]) -> Outcome:
-    """Turn what the guard saw or the child reported into an outcome."""
+    """Turn what the guard saw or the child reported into an outcome.
+
+    Raises:
+        UnwritableError: the child could not write its record, which is no way for a calculation to end.
+    """
+    if "unwritable" in message:
+        raise UnwritableError(*message["unwritable"])
     if "raised" in message:
         reason = "memory-limit" if message.get("memory") else "raised"
         return Outcome("failed", reason, message["raised"])

@@ -11,6 +11,10 @@ from pathlib import Path
 TEMPORARY_SUFFIX = ".part"
 
 
+class UnwritableError(OSError):
+    """The file system refuses to take a file: no room, no permission; no statement about what was computed."""
+
+
 def temporary_beside(path: Path) -> Path:
     """A name in the folder of ``path`` that no other writer, here or on another host, will choose."""
     return path.with_name(f".{path.name}.{os.getpid()}-{secrets.token_hex(6)}{TEMPORARY_SUFFIX}")
@@ -20,7 +24,7 @@ def write_whole(path: Path, data: bytes) -> None:
     """Put ``data`` at ``path``; whoever reads it sees the old file or the new one, never a mixture.
 
     Raises:
-        OSError: the folder cannot be written or the disk is full; ``path`` is as it was before.
+        UnwritableError: the folder cannot be written or the disk is full; ``path`` is as it was before.
     """
     with replacing(path) as temporary, temporary.open("xb") as handle:
         handle.write(data)
@@ -33,7 +37,7 @@ def replacing(path: Path) -> Iterator[Path]:
     When the block raises, the temporary file is removed and ``path`` stays as it was.
 
     Raises:
-        OSError: with the path and what to look for, when the file system refuses.
+        UnwritableError: with the path and what to look for, when the file system refuses.
     """
     temporary = temporary_beside(path)
     try:
@@ -58,7 +62,7 @@ def _flush(path: Path) -> None:
         os.close(descriptor)
 
 
-def _explained(error: OSError, path: Path) -> OSError:
+def _explained(error: OSError, path: Path) -> UnwritableError:
     what = error.strerror or str(error)
     hint = "what was there before is unchanged; check free space, quota and permissions of the folder"
-    return OSError(error.errno, f"cannot write {path}: {what} ({hint})")
+    return UnwritableError(error.errno, f"cannot write {path}: {what} ({hint})")
