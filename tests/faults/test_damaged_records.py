@@ -149,3 +149,18 @@ def test_a_record_of_another_layout_is_not_set_aside(store, monkeypatch):
     with pytest.raises(ValueError, match="layout version 1"):
         store.read("point", KEY)
     assert store.keys("point") == {KEY}
+
+
+@pytest.mark.parametrize("scalars", [{"energy": None}, {}])
+def test_a_converged_record_without_a_number_is_read_as_failed(store, scalars):
+    """Whoever wrote it, with all checksums right: an energy that is none never counts as converged."""
+    with zipfile.ZipFile(io.BytesIO(original(store))) as archive:
+        head = json.loads(archive.read("record.json")) | {"scalars": scalars}
+        positions = archive.read("positions.npy")
+    with zipfile.ZipFile(store.path("point", KEY), "w") as archive:
+        archive.writestr("record.json", json.dumps(head))
+        archive.writestr("positions.npy", positions)
+    record = store.read("point", KEY)
+
+    assert (record.status, record.reason) == ("failed", "not-finite")
+    assert record.message.startswith("energy: not a finite number")

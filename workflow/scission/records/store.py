@@ -20,7 +20,7 @@ import numpy as np
 from scission.records.atomic import temporary_beside, write_whole
 from scission.records.fileformat import DamagedRecordError, pack, unpack
 from scission.records.schema import SCHEMA_VERSION
-from scission.records.validate import finite_or_none, one_line, problems
+from scission.records.validate import finite_or_none, one_line, problems, settled
 
 FOLDERS = {"point": "records", "reference": "references", "fragment": "fragments"}
 DAMAGED = "damaged"
@@ -105,6 +105,8 @@ class Store:
     def read(self, kind: str, key: str, arrays: bool | tuple[str, ...] = True) -> Record | None:
         """The record, or None if there is none or it was damaged (then it was set aside).
 
+        A record that calls a number converged which is none is given as failed, whoever wrote it.
+
         Args:
             arrays: all of them, none, or only those named; what is read is checked by checksum.
 
@@ -179,7 +181,7 @@ def _record(head: dict[str, Any], arrays: dict[str, np.ndarray], kind: str, key:
         raise DamagedRecordError(f"the file lacks or misstates {', '.join(wrong)}")
     for name in ("scalars", "diagnostics"):
         head[name] = {item: np.nan if value is None else value for item, value in head[name].items()}
-    return Record(**{name: head[name] for name in _HEAD_TYPES}, arrays=arrays)
+    return settled(Record(**{name: head[name] for name in _HEAD_TYPES}, arrays=arrays))
 
 
 def _file_names(root: Path) -> Iterator[str]:

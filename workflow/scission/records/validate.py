@@ -41,7 +41,11 @@ def not_finite(record: Record) -> list[str]:
 
 def settled(record: Record) -> Record:
     """The record as it may be stored: converged with a number that is not finite means failed."""
-    names = not_finite(record) if record.status == "converged" else []
+    if record.status != "converged":
+        return record
+    names = not_finite(record)
+    if record.kind == "point" and "energy" not in record.scalars:
+        names.append("energy")
     if not names:
         return record
     message = f"{', '.join(names)}: not a finite number although the iterations converged"
