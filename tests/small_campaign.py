@@ -30,15 +30,21 @@ COSTS = ("wall_s", "cpu_s", "peak_memory_mb")
 class Campaign:
     """A campaign file in a folder of its own, and the commands on it."""
 
-    def __init__(self, folder: Path) -> None:
-        self.file = folder / "h2.yaml"
-        self.file.write_text(H2)
+    def __init__(self, folder: Path, text: str = H2, settings: tuple[str, ...] = ()) -> None:
+        self.file = folder / "campaign.yaml"
+        self.file.write_text(text)
         self.results = folder / "results"
-        self.layout = Layout(self.results / "h2-small")
+        self.layout = Layout(self.results / planning.read_config(self.file)["campaign"])
+        self.settings = settings
 
     def command(self, *words):
         """The words of a ``scission`` command with this campaign's results folder."""
         return [sys.executable, "-c", "import sys; from scission.cli import main; sys.exit(main())", *words]
+
+    def run_command(self, *words):
+        """The words of ``scission run`` for this campaign."""
+        place = ("--results", str(self.results), "--cores", "2")
+        return self.command("run", str(self.file), *place, *words, *self.settings)
 
     def environment(self, drill=None, **more):
         """One thread a process; the drill makes the calculations of some keys misbehave."""
@@ -47,8 +53,7 @@ class Campaign:
 
     def run(self, *words, drill=None, timeout=240):
         """Run ``scission run``; give the finished process."""
-        words = self.command("run", str(self.file), "--results", str(self.results), "--cores", "2", *words)
-        return self.finish(words, drill, timeout)
+        return self.finish(self.run_command(*words), drill, timeout)
 
     def retry(self, *words):
         """Run ``scission retry`` on this campaign's own list."""
@@ -56,7 +61,7 @@ class Campaign:
 
     def start(self, drill=None):
         """Start ``scission run`` without waiting for it."""
-        words = self.command("run", str(self.file), "--results", str(self.results), "--cores", "2")
+        words = self.run_command()
         return subprocess.Popen(words, env=self.environment(drill), stderr=subprocess.PIPE, text=True)
 
     def finish(self, words, drill=None, timeout=240):

@@ -1,0 +1,1 @@
+"""What the fault drill is made of: its campaign, its faults, and the counts of what they cost."""
