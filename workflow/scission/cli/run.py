@@ -10,10 +10,12 @@ from __future__ import annotations
 
 import argparse
 from collections.abc import Sequence
+from functools import partial
 from pathlib import Path
 from typing import TYPE_CHECKING
 
 from scission.cli.common import DEMO, WRONG_INPUT, WrongInputError, read_campaign, results_folder, tell
+from scission.cli.disk import watch_disk
 from scission.cli.limits import add_limits, within_core_hours, within_points
 
 if TYPE_CHECKING:
@@ -48,10 +50,21 @@ def main(args: argparse.Namespace, rest: Sequence[str]) -> int:
         path, extra = split_campaign(rest)
         campaign, results = read_campaign(path), results_folder(args.results)
         _within_limits(campaign, results, args)
-        return run_campaign(path.absolute(), campaign.name, results, args, extra)
+        folder = results / campaign.name
+        check = partial(_recheck, folder)
+        run = partial(run_campaign, path.absolute(), campaign.name, results, args, extra, prepare=check)
+        return watch_disk(folder, run)
     except WrongInputError as error:
         tell(str(error))
         return WRONG_INPUT
+
+
+def _recheck(folder: Path) -> None:
+    from scission.execution.layout import Layout
+    from scission.execution.recheck import recheck
+
+    for words in recheck(Layout(folder)):
+        tell(words)
 
 
 def _within_limits(campaign: Campaign, results: Path, args: argparse.Namespace) -> None:
