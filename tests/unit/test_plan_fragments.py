@@ -4,7 +4,7 @@ import pytest
 from campaigns import changed, load
 from scission.geometry import build_path
 from scission.plan import make_plan
-from scission.plan.fragments import charge_splits, couples, fragment_splits, unpaired_options
+from scission.plan.fragments import charge_splits, couples, fragment_splits, fragment_work, unpaired_options
 
 # Ground-state multiplicities of atoms and ions: NIST Atomic Spectra Database (from memory).
 HUND = {("H", 0): 2, ("H", -1): 1, ("Li", 0): 2, ("B", 0): 2, ("C", 0): 3, ("N", 0): 4, ("O", 0): 3}
@@ -95,3 +95,14 @@ def test_small_groups_may_be_quartets():
     """CH: doublet and quartet lie close (0.74 eV; Huber and Herzberg, from memory); methyl has no such state."""
     assert unpaired_options(["C", "H"], 0) == [1, 3]
     assert unpaired_options(["C", "H", "H", "H"], 0) == [1]
+
+
+def test_two_equal_atoms_are_one_fragment(tmp_path):
+    """The atoms of a homonuclear molecule have equal shares of its active space: each state is computed once."""
+    stretch = {"bond": ["H1", "H2"], "lengths": [0.7, 3.0]}
+    scan = {"molecule": "hydrogen", "levels": ["cas"], "stretch": stretch}
+    campaign = load(changed(("scans", {"hh": scan})), tmp_path)
+    work = fragment_work(campaign, make_plan(campaign).points)
+    states = [(w["molecule"]["charge"], w["molecule"]["multiplicity"]) for w in work]
+
+    assert sorted(states) == sorted(set(states))

@@ -28,6 +28,7 @@ GRADIENT_TOLERANCE = 3e-6
 CI_TOLERANCE = 1e-11
 MAX_MACRO_CYCLES = 80
 _SPIN_SHIFT = 0.5
+_SPIN_ERROR = 1e-4
 _STEP = 0.1
 """Largest orbital rotation of a step: the default of 0.02 takes twice the cycles from carried orbitals."""
 
@@ -57,8 +58,14 @@ def solve_casscf(task: dict[str, Any], store: Store) -> Solution:
     return best
 
 
-def casci_object(mole: gto.Mole, spec: dict[str, Any], sizes: Array, orbital_step: bool) -> Any:
-    """Return the engine's CASSCF (``orbital_step``) or CASCI object with fixed spin and our tolerances."""
+def casci_object(
+    mole: gto.Mole, spec: dict[str, Any], sizes: Array, orbital_step: bool, penalty: bool = True
+) -> Any:
+    """Return the engine's CASSCF (``orbital_step``) or CASCI object with our tolerances.
+
+    The spin is fixed by a ``penalty`` on others; without it a CI vector keeps the spin that it starts with, as
+    long as rounding does not let a lower state of another spin grow, at half the cost.
+    """
     _, n_orbitals, n_electrons = (int(n) for n in sizes)
     field = scf.build_field(mole, spec)
     make = mcscf.CASSCF if orbital_step else mcscf.CASCI
@@ -68,7 +75,8 @@ def casci_object(mole: gto.Mole, spec: dict[str, Any], sizes: Array, orbital_ste
     mc.fcisolver.conv_tol, mc.fcisolver.max_cycle = CI_TOLERANCE, 200
     mc.fcisolver.pspace_size = _MODEL_SPACE
     s = mole.spin / 2.0
-    mc.fix_spin_(shift=_SPIN_SHIFT, ss=s * (s + 1.0))
+    if penalty:
+        mc.fix_spin_(shift=_SPIN_SHIFT, ss=s * (s + 1.0))
     states = spec.get("states", 1)
     if states > 1 and orbital_step:
         mc = mc.state_average_(np.full(states, 1.0 / states))
@@ -159,18 +167,18 @@ def _optimise(
     notes: dict[str, str],
 ) -> Solution:
     """Optimise orbitals and CI vectors; where the first-order steps do not converge, the second-order solver."""
-    spec = task["spec"]
-    averaged = spec.get("states", 1) > 1
+    averaged = task["spec"].get("states", 1) > 1
     working, coeff, vectors = _with_symmetry(mole, coeff, vectors, sizes)
     guess = vectors if vectors is None or averaged else vectors[0]
-    mc = casci_object(working, spec, sizes, orbital_step=True)
-    if task.get("remedy") != "second-order":
-        mc.kernel(coeff, ci0=guess)
-        coeff, guess = mc.mo_coeff, mc.ci
+    mc = None
+    if guess is not None and not averaged and not task.get("remedy"):
+        mc = _iterated(task, working, coeff, guess, sizes, penalty=False)
+    if mc is None or not mc.converged or not _right_spin(mc, mole):
+        mc = _iterated(task, working, coeff, guess, sizes, penalty=True)
     if not mc.converged:
-        mc = mcscf.newton(casci_object(mole, spec, sizes, orbital_step=True))
+        first, mc = mc, mcscf.newton(casci_object(mole, task["spec"], sizes, orbital_step=True))
         mc.max_cycle_macro = MAX_MACRO_CYCLES
-        mc.kernel(np.asarray(coeff), ci0=guess)
+        mc.kernel(np.asarray(first.mo_coeff), ci0=first.ci)
     found = list(mc.ci) if averaged else [mc.ci]
     energies = np.atleast_1d(mc.e_states if averaged else mc.e_tot)
     solution = _solution(
@@ -180,6 +188,23 @@ def _optimise(
     solution.notes = notes
     solution.extra["active"] = sizes
     return solution
+
+
+def _iterated(
+    task: dict[str, Any], mole: gto.Mole, coeff: Array, guess: Any, sizes: Array, penalty: bool
+) -> Any:
+    """Return the engine's object after its first-order steps, none for the remedy that leaves them out."""
+    mc = casci_object(mole, task["spec"], sizes, True, penalty)
+    if task.get("remedy") == "second-order":
+        mc.mo_coeff, mc.ci, mc.converged = coeff, guess, False
+    else:
+        mc.kernel(coeff, ci0=guess)
+    return mc
+
+
+def _right_spin(mc: Any, mole: gto.Mole) -> bool:
+    s = mole.spin / 2.0
+    return bool(abs(mc.fcisolver.spin_square(mc.ci, mc.ncas, mc.nelecas)[0] - s * (s + 1.0)) < _SPIN_ERROR)
 
 
 def _with_symmetry(

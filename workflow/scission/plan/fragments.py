@@ -155,6 +155,8 @@ def _state(
 ) -> FragmentState:
     atoms, known = list(path.fragments[which]), molecule.symbols
     symbols = [known[a] for a in atoms]
+    twins = len(known) == 2 and known[0] == known[1]
+    place = 0 if twins else which  # two equal atoms have equal shares of an active space
     facts = {"symbols": symbols, "charge": charge, "multiplicity": unpaired + 1}
     positions = _by_itself(path.positions[-1][atoms])
     spec = fragment_spec(level, symbols, unpaired)
@@ -165,11 +167,11 @@ def _state(
         "spec": spec,
         "correlation": level.correlation,
         "frozen_core": level.correlates_valence_only,
-        "which": which,
+        "which": place,
         "fragments": [list(f) for f in path.fragments],
         "bonds": [],
     }
-    whole = _whole(molecule, level, path, which) if level.reference == "CASSCF" else None
+    whole = _whole(molecule, level, path, place) if level.reference == "CASSCF" else None
     method = [spec, level.correlation, level.correlates_valence_only and level.correlation != "NEVPT2", whole]
     head = canonical([PHYSICS_VERSION, "fragment", facts, method])
     key = digest(head.encode() + geometry_bytes(positions))
