@@ -17,10 +17,15 @@ from typing import IO, Any
 
 import numpy as np
 
+from scission.records.stored_zip import verified_members
+
 HEAD = "record.json"
 ARRAY_LIST = "arrays"
 _EPOCH = (1980, 1, 1, 0, 0, 0)  # the same record gives the same bytes at any time
 _EINVAL = 22
+_SMALL = 1 << 18
+"""Files up to so many bytes are read in one go."""
+_NPY = b"\x93NUMPY\x01\x00"
 _MALFORMED = (ValueError, KeyError, TypeError, EOFError, RuntimeError, SyntaxError)
 
 
@@ -58,11 +63,14 @@ def unpack(
         OSError: the file system fails; that is no statement about the record.
     """
     try:
+        fast = _from_memory(handle, arrays)
+        if fast is not None:
+            return fast
         with zipfile.ZipFile(handle) as archive:
             head = json.loads(_member(archive, HEAD))
             if not isinstance(head, dict):
                 raise DamagedRecordError(f"{HEAD} does not hold an object")
-            return head, {name: _array(archive, name) for name in _wanted(archive, head, arrays)}
+            return head, {name: _array(archive, name) for name in _wanted(archive.namelist(), head, arrays)}
     except OSError as error:
         if error.errno not in (None, _EINVAL):  # a broken directory makes zipfile seek to nowhere
             raise
@@ -71,11 +79,27 @@ def unpack(
         raise DamagedRecordError(f"{type(error).__name__}: {error}") from error
 
 
-def _wanted(archive: zipfile.ZipFile, head: Mapping[str, Any], arrays: bool | tuple[str, ...]) -> list[str]:
+def _from_memory(
+    handle: IO[bytes], arrays: bool | tuple[str, ...]
+) -> tuple[dict[str, Any], dict[str, np.ndarray]] | None:
+    """Do the same from one read of the file; None for a large one and for anything unusual, which zipfile judges."""
+    data = handle.read(_SMALL + 1)
+    members = verified_members(data) if len(data) <= _SMALL else None
+    if members is None or HEAD not in members:
+        handle.seek(0)
+        return None
+    head = json.loads(bytes(members[HEAD]))
+    if not isinstance(head, dict):
+        raise DamagedRecordError(f"{HEAD} does not hold an object")
+    names = _wanted(list(members), head, arrays)
+    return head, {name: _array_of(members[f"{name}.npy"], name) for name in names}
+
+
+def _wanted(held: list[str], head: Mapping[str, Any], arrays: bool | tuple[str, ...]) -> list[str]:
     # The archive's directory has no checksum of its own: a flipped bit there can hide a member.
     names = sorted(head[ARRAY_LIST])
-    if sorted(archive.namelist()) != sorted([HEAD, *(f"{name}.npy" for name in names)]):
-        raise DamagedRecordError(f"holds {archive.namelist()}, its head lists {names}")
+    if sorted(held) != sorted([HEAD, *(f"{name}.npy" for name in names)]):
+        raise DamagedRecordError(f"holds {held}, its head lists {names}")
     if arrays is True:
         return names
     return [name for name in names if name in arrays] if arrays else []
@@ -90,13 +114,16 @@ def _member(archive: zipfile.ZipFile, name: str) -> bytes:
 
 
 def _array(archive: zipfile.ZipFile, name: str) -> np.ndarray:
-    data = _member(archive, f"{name}.npy")
-    head = io.BytesIO(data)
-    if np.lib.format.read_magic(head) != (1, 0):
-        raise DamagedRecordError(f"{name}.npy has an unknown format version")
-    length = int.from_bytes(head.read(2), "little")
-    dtype, shape, fortran_order = _claim(head.read(length).decode("latin1"))
-    body = data[head.tell() :]
+    return _array_of(memoryview(_member(archive, f"{name}.npy")), name)
+
+
+def _array_of(data: memoryview, name: str) -> np.ndarray:
+    if data[: len(_NPY)] != _NPY:
+        raise DamagedRecordError(f"{name}.npy is no array or of an unknown format version")
+    start = len(_NPY) + 2
+    body_at = start + int.from_bytes(data[len(_NPY) : start], "little")
+    dtype, shape, fortran_order = _claim(bytes(data[start:body_at]))
+    body = data[body_at:]
     if dtype.hasobject or math.prod(shape) * dtype.itemsize != len(body):
         raise DamagedRecordError(f"{name}.npy claims {shape} of {dtype} but holds {len(body)} bytes")
     flat = np.frombuffer(body, dtype=dtype)
@@ -104,7 +131,7 @@ def _array(archive: zipfile.ZipFile, name: str) -> np.ndarray:
 
 
 @lru_cache(maxsize=512)  # most arrays of a campaign share a few headers
-def _claim(header: str) -> tuple[np.dtype, tuple[int, ...], bool]:
+def _claim(header: bytes) -> tuple[np.dtype, tuple[int, ...], bool]:
     """What an npy header says; by hand, because numpy would allocate whatever size it claims."""
-    claim = ast.literal_eval(header)
+    claim = ast.literal_eval(header.decode("latin1"))
     return np.dtype(claim["descr"]), tuple(int(size) for size in claim["shape"]), bool(claim["fortran_order"])

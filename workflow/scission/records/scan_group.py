@@ -52,14 +52,16 @@ class ScanGroup:
 
     def _make_axes(self) -> None:
         group, first = self._group, next(iter(self._grid.values()))
-        scale(group, "level", np.array(self._levels, dtype=object), "level of theory")
-        scale(group, "point", np.array(list(self._grid), dtype="i8"), "number of the point along the scan")
+        levels = scale(group, "level", np.array(self._levels, dtype=object), "level of theory")
+        numbers = np.array(list(self._grid), dtype="i8")
+        points = scale(group, "point", numbers, "number of the point along the scan")
+        self._plane = [levels, points]  # kept: to look them up for every array takes a tenth of gather
         scale(group, "xyz", np.array(["x", "y", "z"], dtype=object), "Cartesian component")
         for index, meaning in enumerate(first.names):
             name = "coordinate_angstrom" if index == 0 else f"coordinate_{index + 1}_angstrom"
             values = [point.coordinate[index] for point in self._grid.values()]
             item = Field(name, "f8", "angstrom", (), meaning)
-            describe(group.create_dataset(name, data=values), item, [group["point"]])
+            describe(group.create_dataset(name, data=values), item, [points])
         self._positions = RaggedArray(group, "positions", len(self._grid))
         self._ragged: dict[tuple[str, str], RaggedArray] = {}
 
@@ -106,7 +108,7 @@ class ScanGroup:
     def _write(self, item: Field, values: np.ndarray) -> h5py.Dataset:
         dtype = _TEXT if item.dtype == "str" else item.dtype
         dataset = self._group.create_dataset(item.name, data=values, dtype=dtype)
-        describe(dataset, item, [self._group["level"], self._group["point"]])
+        describe(dataset, item, self._plane)
         dataset.attrs["coordinates"] = "coordinate_angstrom"
         if item.dtype == "i8" and item is not ATTEMPTS:  # attempts are known of every point
             dataset.attrs["_FillValue"] = np.int64(MISSING_INTEGER)
@@ -127,7 +129,7 @@ class ScanGroup:
             array.finish(_RAGGED[name], self._axes(home, _RAGGED[name], array))
 
     def _axes(self, home: h5py.Group, item: Field, array: RaggedArray) -> list[h5py.Dataset]:
-        axes = [self._group["point"]]
+        axes = [self._plane[1]]
         for name, size in zip(item.shape, array.shape[1:], strict=True):
             if name in ("atom", "xyz"):
                 axes.append(self._group[name])
@@ -145,12 +147,13 @@ def symbols_of(record: Record) -> list[str]:
     return [str(item) for item in inputs.get("symbols") or inputs.get("molecule", {}).get("symbols", [])]
 
 
-def scale(group: h5py.Group, name: str, values: np.ndarray, meaning: str) -> None:
-    """Write a labelled axis (an HDF5 dimension scale)."""
+def scale(group: h5py.Group, name: str, values: np.ndarray, meaning: str) -> h5py.Dataset:
+    """Write a labelled axis (an HDF5 dimension scale) and return it."""
     dtype = _TEXT if values.dtype == object else values.dtype
     dataset = group.create_dataset(name, data=values, dtype=dtype)
     dataset.make_scale(name)
     dataset.attrs["long_name"] = meaning
+    return dataset
 
 
 def describe(dataset: h5py.Dataset, item: Field, axes: Sequence[h5py.Dataset]) -> None:

@@ -20,7 +20,7 @@ import numpy as np
 from scission.records.atomic import temporary_beside, write_whole
 from scission.records.fileformat import DamagedRecordError, pack, unpack
 from scission.records.schema import SCHEMA_VERSION
-from scission.records.validate import finite_or_none, one_line, problems, settled
+from scission.records.validate import finite_or_none, lacks_a_number, one_line, problems, settled
 
 FOLDERS = {"point": "records", "reference": "references", "fragment": "fragments"}
 DAMAGED = "damaged"
@@ -181,7 +181,8 @@ def _record(head: dict[str, Any], arrays: dict[str, np.ndarray], kind: str, key:
         raise DamagedRecordError(f"the file lacks or misstates {', '.join(wrong)}")
     for name in ("scalars", "diagnostics"):
         head[name] = {item: np.nan if value is None else value for item, value in head[name].items()}
-    return settled(Record(**{name: head[name] for name in _HEAD_TYPES}, arrays=arrays))
+    record = Record(**{name: head[name] for name in _HEAD_TYPES}, arrays=arrays)
+    return settled(record) if lacks_a_number(record) else record
 
 
 def _file_names(root: Path) -> Iterator[str]:

@@ -39,6 +39,12 @@ def not_finite(record: Record) -> list[str]:
     return names + [name for name, array in floats.items() if not np.all(np.isfinite(array))]
 
 
+def lacks_a_number(record: Record) -> bool:
+    """Whether a scalar or diagnostic is not finite, or a point has no energy; tells nothing of the arrays."""
+    numbers = (*record.scalars.values(), *record.diagnostics.values())
+    return not all(map(math.isfinite, numbers)) or (record.kind == "point" and "energy" not in record.scalars)
+
+
 def settled(record: Record) -> Record:
     """The record as it may be stored: converged with a number that is not finite means failed."""
     if record.status != "converged":
