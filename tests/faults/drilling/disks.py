@@ -65,4 +65,5 @@ def _expect_told(campaign, done, word):
     """Expect another status than those of a finished run, and one plain line with folder and remedy."""
     lines = [line for line in done.stderr.splitlines() if str(campaign.results) in line and word in line]
     if done.returncode in (0, 2, 3) or not lines or "Traceback" in done.stderr:
-        raise StuckError(f"exit status {done.returncode}, said: {done.stderr[-600:]}")
+        around = done.stderr.find("Traceback") if "Traceback" in done.stderr else -600
+        raise StuckError(f"exit status {done.returncode}, said: {done.stderr[around:][:2000]}")

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import argparse
+import sys
 from collections import defaultdict
 from collections.abc import Callable, Iterable
 from pathlib import Path
@@ -15,6 +16,7 @@ from scission.diagnostics import DIAGNOSTICS
 from scission.execution.layout import Layout, read_json
 from scission.execution.recheck import seal, unseal
 from scission.execution.remedies import next_remedy
+from scission.execution.storage import told_plainly
 from scission.plan import Point, make_plan
 from scission.records import Store
 from scission.records.atomic import write_whole
@@ -32,7 +34,7 @@ def run_step(description: str | None, step: Callable[[Path, Path], None]) -> Non
     parser.add_argument("--results", type=Path, required=True, help="folder of the campaign's results")
     parser.add_argument("--campaign", type=Path, required=True, help="campaign file")
     arguments = parser.parse_args()
-    step(arguments.campaign, arguments.results.absolute())
+    sys.exit(told_plainly(lambda: step(arguments.campaign, arguments.results.absolute())))
 
 
 def tabulate_campaign(campaign_file: Path, folder: Path) -> None:

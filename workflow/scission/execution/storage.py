@@ -55,10 +55,10 @@ def explain(folder: Path, error: OSError) -> str:
     return f"{folder} cannot be written ({error.strerror or error}); see to its disk, {_AGAIN}"
 
 
-def told_plainly(work: Callable[[], int]) -> int:
-    """Do some work; where the disk takes nothing, say so in a line and return ``CANNOT_WRITE``."""
+def told_plainly(work: Callable[[], int | None]) -> int:
+    """Do some work; return its exit status, or where the disk takes nothing, say so in a line and CANNOT_WRITE."""
     try:
-        return work()
+        return work() or 0
     except UnwritableError as error:
         print(error.strerror, file=sys.stderr)
         return CANNOT_WRITE
