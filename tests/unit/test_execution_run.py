@@ -9,11 +9,12 @@ import pytest
 from scission.execution import engine, planning
 from scission.execution.layout import Layout, read_json, write_json
 from scission.execution.ledger import merge
+from scission.execution.orphans import Settling
 from scission.execution.processes import identity, is_alive
 from scission.execution.progress import Progress
 from scission.execution.remedies import LADDERS, REMEDIES, factors, next_remedy
 from scission.execution.retries import request_points
-from scission.execution.runfile import AlreadyRunningError, hold, settle_earlier_run
+from scission.execution.runfile import AlreadyRunningError, hold
 from scission.records.schema import REASONS
 from scission.records.store import Record, Store
 
@@ -154,7 +155,7 @@ def test_a_killed_run_leaves_its_story_and_no_lock(tmp_path):
     lock.touch()
     with hold(layout) as run:
         left = dict(run.left)
-        settle_earlier_run(layout, left, lambda _: None)
+        Settling(layout, left, print).settle()
 
     assert left["engine"]["pid"] == 1
     assert not lock.exists()
@@ -166,7 +167,7 @@ def test_workers_of_a_killed_run_are_waited_for(tmp_path):
     worker = subprocess.Popen([sys.executable, "-c", "import time; time.sleep(1.5)"])
     who = identity(worker.pid)
     write_json(layout.worker("correlate.a.b.c"), who)
-    settle_earlier_run(layout, {}, said.append, worker.poll)
+    Settling(layout, {}, said.append, worker.poll).settle()
 
     assert not is_alive(who)
     assert "correlate.a.b.c" in said[0]

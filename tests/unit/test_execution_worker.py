@@ -163,8 +163,8 @@ def test_a_dead_workers_claim_does_not_hold(tmp_path):
     import os
 
     os.utime(Layout(tmp_path).worker(JOB), (0, 0))
-    with claim(Layout(tmp_path), JOB) as path:
-        assert read_json(path)["pid"] == os.getpid()
+    with claim(Layout(tmp_path), JOB) as mine:
+        assert read_json(mine.path)["pid"] == os.getpid()
 
 
 def test_budgets_leave_time_for_others_and_never_vanish():

@@ -6,7 +6,7 @@ from pathlib import Path
 
 from snakemake.exceptions import WorkflowError
 
-from scission.execution.engine import ATTEMPTS
+from scission.execution.engine import ATTEMPTS, end_with_caller
 from scission.execution.layout import PROJECT, read_json
 from scission.execution.planning import PlanMissingError, plan_options, refresh
 
@@ -26,6 +26,8 @@ def read_plan():
         raise WorkflowError(f"{campaign_file}:", str(error))
 
 
+if workflow.is_main_process:
+    end_with_caller()
 LAYOUT, PLAN = read_plan()
 JOBS = {entry["job"]: entry for entry in PLAN["jobs"]}
 CAMPAIGN, PYTHON, SCRIPTS = (

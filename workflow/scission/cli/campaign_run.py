@@ -18,9 +18,10 @@ from scission.cli.common import POINTS_FAILED, WrongInputError, tell
 from scission.execution import engine, planning
 from scission.execution.layout import Layout, read_json
 from scission.execution.markers import live_workers
+from scission.execution.orphans import OrphansError, Settling
 from scission.execution.processes import identity, is_alive
 from scission.execution.progress import Progress, duration
-from scission.execution.runfile import AlreadyRunningError, RunFile, hold, settle_earlier_run
+from scission.execution.runfile import CONFIRM_S, AlreadyRunningError, RunFile, hold
 
 FAULT = 1
 _LINES_OF_TROUBLE = 40
@@ -48,12 +49,12 @@ def run_campaign(
     command = engine.Command(path, results, args.on, tuple(settings), tuple(extra))
     try:
         options = planning.plan_options(command.config())
-        with hold(layout) as run:
+        with hold(layout, tell, 0.0 if command.executor() == "local" else CONFIRM_S) as run:
             planning.refresh(planning.read_config(path), path, results, options)
-            return Session(layout, command, run, args.verbose, prepare).go()
-    except (FileNotFoundError, ValueError) as error:
+            return Session(layout, command, run, args.verbose, prepare, args.orphans).go()
+    except (FileNotFoundError, ValueError, PermissionError) as error:
         raise WrongInputError(str(error)) from None
-    except AlreadyRunningError as error:
+    except (AlreadyRunningError, OrphansError) as error:
         tell(str(error))
         return FAULT
 
@@ -67,6 +68,7 @@ class Session:
     run: RunFile
     verbose: bool
     prepare: Callable[[], None]
+    orphans: str
     display: Display = field(init=False)
     halt: Halt = field(init=False)
 
@@ -75,18 +77,44 @@ class Session:
         self.halt = Halt(self.layout)
 
     def go(self) -> int:
-        """Settle what an earlier run left, run the engine, salvage, sum up."""
-        settle_earlier_run(self.layout, self.run.left, tell, self._tick)
-        self.prepare()
+        """Settle what an earlier run left, run the engine, salvage, sum up.
+
+        Raises:
+            OrphansError: it cannot be told whether an earlier run still is at work.
+        """
         if engine.is_informative(self.command.extra):
+            self.run.put_back()
+            self.prepare()
             tell(str(self.command))
             return engine.call(self.command, None)
+        settling = self._settle()
+        self.prepare()
         with self.halt.on_termination():
             code = self._call(self.command)
-            if code not in (0, engine.INTERRUPTED):
+            if code not in (0, engine.INTERRUPTED) and not self.run.lost:
                 self._show_trouble()
+                if self.command.queue_name:  # an engine in trouble may leave its jobs behind
+                    settling.empty_queue(self.command.queue_name)
                 code = self._salvage()
+        if self.run.lost:
+            tell("this campaign was taken over by a run on another machine, which goes on with it")
+            return FAULT
         return code if code else self._sum_up()
+
+    def _settle(self) -> Settling:
+        """Deal with what earlier runs left, and name the jobs of this one for the next."""
+        name, on_slurm = self.run.queue_name(self.layout), self.command.executor() == "slurm"
+        settling = Settling(self.layout, self.run.left, tell, self._tick, self.orphans)
+        try:
+            settling.settle(name if on_slurm or self.run.left.get("queue") else "")
+        except OrphansError:
+            self.run.put_back()
+            self.run.clear()
+            raise
+        queue = {"name": name, "folder": str(self.layout.folder)} if on_slurm else None
+        self.run.note(queue=queue, engine=None)
+        self.command = replace(self.command, queue_name=name if on_slurm else "")
+        return settling
 
     def _call(self, command: engine.Command) -> int:
         tell(str(command))
@@ -119,7 +147,8 @@ class Session:
         return POINTS_FAILED if has_failures(self.layout.failures) else 0
 
     def _tick(self) -> None:
-        self.run.beat()
+        if self.run.lost:
+            self.halt()
         if not self.verbose:
             self.display.show()
 

@@ -39,6 +39,14 @@ def add_run_options(parser: argparse.ArgumentParser) -> None:
     parser.add_argument(
         "--on", default="local", metavar="PROFILE", help="local, slurm, or the folder of another profile"
     )
+    parser.add_argument(
+        "--orphans",
+        choices=("wait", "cancel", "none"),
+        default="wait",
+        help="jobs that an earlier, killed run left running in Slurm: wait for them (default), cancel them, "
+        "or none: do not look for any; jobs that have not started are cancelled in any case, and submitted "
+        "again",
+    )
     parser.add_argument("--verbose", action="store_true", help="show everything the workflow engine says")
 
 

@@ -2,8 +2,9 @@
 
 None of this is reached in normal work.  ``RUNNERS`` holds task runners that take no chemistry; the
 variable SCISSION_DRILL, ``{"<key>": "raise" | "kill" | "hang" | "allocate" | "pause"}`` as JSON, makes the
-listed calculations misbehave in an otherwise normal run.  SCISSION_DRILL_JOURNAL names a file in which every
-calculation then notes its start and its end, so that nothing that is computed twice goes unseen.
+listed calculations misbehave in an otherwise normal run; ``pause:SECONDS`` says how long the pause is.
+SCISSION_DRILL_JOURNAL names a file in which every calculation then notes its start and its end, so that
+nothing that is computed twice goes unseen.
 """
 
 from __future__ import annotations
@@ -35,8 +36,8 @@ def misbehave(how: str) -> None:
         raise DrillError("a drill\nraised this")
     if how == "kill":
         os.kill(os.getpid(), signal.SIGKILL)
-    if how == "pause":
-        time.sleep(PAUSE_S)
+    if how.startswith("pause"):
+        time.sleep(float(how.partition(":")[2] or PAUSE_S))
     if how == "hang":
         time.sleep(3600.0)
     if how == "allocate":

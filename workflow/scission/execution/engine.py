@@ -10,27 +10,33 @@ import time
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 from pathlib import Path
+from typing import Any
 
 import psutil
 import yaml
 
 from scission.execution.layout import PROJECT
-from scission.execution.processes import MEGABYTE
+from scission.execution.processes import MEGABYTE, die_with_parent
 
 ATTEMPTS = 2
 """How often the engine starts a job at most; the profiles' ``retries`` is one less."""
 _MEMORY_SHARE = 0.9
+_CALLER = "SCISSION_CALLER"
 
 
 @dataclass(frozen=True)
 class Command:
-    """One call of the engine for a campaign file; ``extra`` are a person's own options for it."""
+    """One call of the engine for a campaign file; ``extra`` are a person's own options for it.
+
+    ``queue_name`` is what the names of its jobs in Slurm's queue begin with.
+    """
 
     campaign_file: Path
     results: Path
     profile: str = "local"
     settings: tuple[str, ...] = ()
     extra: tuple[str, ...] = ()
+    queue_name: str = ""
 
     def words(self) -> list[str]:
         """Return the command as a list of words.
@@ -47,6 +53,7 @@ class Command:
             "--rerun-incomplete",
             *self._memory(),
             *_without_config(self.extra)[0],
+            *(("--slurm-jobname-prefix", self.queue_name) if self.queue_name else ()),
         ]
 
     def config(self) -> dict[str, str]:
@@ -56,6 +63,18 @@ class Command:
         """
         own = _profile_config(profile_folder(self.profile))
         return own | dict(_pair(word) for word in [*self.settings, *_without_config(self.extra)[1]])
+
+    def executor(self) -> str:
+        """Return what the engine hands jobs to: "local", "slurm" ..., by its options or the profile.
+
+        Raises:
+            FileNotFoundError: there is no such profile.
+        """
+        for word, following in zip(self.extra, [*self.extra[1:], ""], strict=True):
+            option, _, value = word.partition("=")
+            if option in ("--executor", "-e"):
+                return value or following
+        return str(_content(profile_folder(self.profile)).get("executor") or "local")
 
     def _memory(self) -> list[str]:
         own = any(word.split("=")[0] in ("--resources", "--res") for word in self.extra)
@@ -73,9 +92,12 @@ def _pair(word: str) -> tuple[str, str]:
 
 
 def _profile_config(folder: Path) -> dict[str, str]:
-    content = yaml.safe_load((folder / "config.yaml").read_text(encoding="utf-8")) or {}
-    entries = content.get("config") or []
+    entries = _content(folder).get("config") or []
     return dict(entries) if isinstance(entries, dict) else dict(_pair(word) for word in entries)
+
+
+def _content(profile: Path) -> dict[str, Any]:
+    return yaml.safe_load((profile / "config.yaml").read_text(encoding="utf-8")) or {}
 
 
 def _without_config(extra: Sequence[str]) -> tuple[list[str], list[str]]:
@@ -111,10 +133,20 @@ def profile_folder(name: str) -> Path:
 
 
 def environment() -> dict[str, str]:
-    """Return the environment for the engine: all caches inside the project, one thread a process."""
+    """Return the environment for the engine: all caches inside the project, and who called it."""
     cache = PROJECT / ".cache"
     inside = {"XDG_CACHE_HOME": str(cache), "MPLCONFIGDIR": str(cache / "matplotlib")}
-    return dict(os.environ) | inside | {"PYTHONUNBUFFERED": "1"}
+    return dict(os.environ) | inside | {"PYTHONUNBUFFERED": "1", _CALLER: str(os.getpid())}
+
+
+def end_with_caller() -> None:
+    """Have this process, the engine's, end when the command that called it is killed.
+
+    An engine that lived on could not be seen from another machine, and would go on submitting jobs.
+    What it has started goes on; the next run deals with that.
+    """
+    if _CALLER in os.environ:
+        die_with_parent(int(os.environ.pop(_CALLER)))
 
 
 def call(

@@ -13,6 +13,7 @@ import signal
 import subprocess
 import sys
 import time
+from collections.abc import Callable
 from dataclasses import dataclass
 from pathlib import Path
 from types import FrameType, TracebackType
@@ -72,12 +73,16 @@ class Guard:
         folder: results/<campaign>.
         job: id of the job it works for (for the markers).
         runner: which function the child runs tasks with (see ``child.load_runner``).
+        pulse: called several times a second while it supervises; what it raises ends the calculation.
     """
 
-    def __init__(self, folder: Path, job: str, runner: str = "chemistry") -> None:
+    def __init__(
+        self, folder: Path, job: str, runner: str = "chemistry", pulse: Callable[[], None] = lambda: None
+    ) -> None:
         self.layout = Layout(folder)
         self.job = job
         self.runner = runner
+        self.pulse = pulse
         self._child: subprocess.Popen[bytes] | None = None
         self._answers: IO[bytes] | None = None
         self._rest = b""
@@ -211,3 +216,4 @@ class Guard:
         if self._stop:
             self._end_child()
             raise StoppedError(self._stop)
+        self.pulse()

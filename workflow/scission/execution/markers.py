@@ -2,16 +2,17 @@
 
 from __future__ import annotations
 
-import contextlib
+import os
 import time
 from collections.abc import Iterator
 from contextlib import contextmanager
+from dataclasses import dataclass, field
 from datetime import UTC, datetime
 from pathlib import Path
 from typing import Any
 
 from scission.execution.layout import Layout, read_json, write_json
-from scission.execution.processes import identity, is_alive, is_local
+from scission.execution.processes import identity, is_alive, is_local, is_same
 
 
 def now() -> str:
@@ -40,39 +41,97 @@ def pending_request(layout: Layout, key: str) -> dict[str, Any] | None:
     return read_json(layout.request(key))
 
 
+REFRESH_S = 20.0
+"""How often a worker shows that it lives, to machines that do not see its process."""
+STALE_AFTER_S = 120.0
+"""A claim from another machine that was not refreshed for so long is taken for dead."""
+
+
+class ClaimLostError(Exception):
+    """Another worker has taken the job over; the message says who."""
+
+
+@dataclass
+class Claim:
+    """A worker's claim on a job: a file that names it, refreshed for as long as it works."""
+
+    path: Path
+    who: dict[str, Any] = field(default_factory=lambda: identity() | _scheduler_job() | {"since": now()})
+    _refreshed: float = field(default_factory=time.monotonic)
+
+    def take(self) -> bool:
+        """Make the file; False if there is one already."""
+        try:
+            self.path.parent.mkdir(parents=True, exist_ok=True)
+            self.path.touch(exist_ok=False)
+        except FileExistsError:
+            return False
+        except OSError:
+            pass  # writing meets the same trouble, and explains it
+        write_json(self.path, self.who)
+        return True
+
+    def tell(self, facts: dict[str, Any]) -> None:
+        """Add facts about the progress of the job."""
+        write_json(self.path, self.who | {"since": now(), **facts})
+
+    def refresh(self) -> None:
+        """Show now and then that the worker lives.
+
+        Raises:
+            ClaimLostError: the job belongs to another worker by now, who took this one for dead.
+        """
+        if time.monotonic() - self._refreshed < REFRESH_S:
+            return
+        self._refreshed = time.monotonic()
+        try:
+            holder = read_json(self.path)
+            if holder is None and self.take():
+                return
+            if not is_same(holder or {}, self.who):
+                raise ClaimLostError(f"another worker has taken over {self.path.stem}: {holder}")
+            os.utime(self.path)
+        except OSError as error:  # a file system that hiccups must not end hours of calculation
+            print(f"{now()} the claim on the job could not be refreshed: {error}", flush=True)
+
+
+def _scheduler_job() -> dict[str, str]:
+    number = os.environ.get("SLURM_JOB_ID")
+    return {"slurm_job": number} if number else {}
+
+
 @contextmanager
-def claim(layout: Layout, job: str, poll_s: float = 1.0) -> Iterator[Path]:
+def claim(layout: Layout, job: str, poll_s: float = 1.0) -> Iterator[Claim]:
     """Hold the claim on a job, so that no two workers ever write the same records.
 
     A worker that an earlier run left behind on this machine is waited for.  A claim from another
     machine holds as long as its worker refreshes it.
     """
-    path = layout.worker(job)
-    while _held(path):
-        print(f"{job} is still being computed by an earlier worker; waiting for it", flush=True)
-        time.sleep(poll_s)
-    write_json(path, identity() | {"since": now()})
+    mine = Claim(layout.worker(job))
+    while not mine.take():
+        if is_held(mine.path):
+            print(f"{job} is still being computed by an earlier worker; waiting for it", flush=True)
+            time.sleep(poll_s)
+        else:
+            mine.path.unlink(missing_ok=True)
     try:
-        yield path
+        yield mine
     finally:
-        path.unlink(missing_ok=True)
+        if is_same(read_json(mine.path) or {}, mine.who):
+            mine.path.unlink(missing_ok=True)
 
 
-STALE_AFTER_S = 120.0
-"""A claim from another machine that was not refreshed for so long is taken for dead."""
-
-
-def _held(path: Path) -> bool:
+def is_held(path: Path) -> bool:
+    """Whether the worker that a claim's file names is at work."""
     holder = read_json(path)
-    if holder is None:
-        return False
-    if is_local(holder):
+    if holder is not None and is_local(holder):
         return is_alive(holder)
-    with contextlib.suppress(FileNotFoundError):
+    try:
         return time.time() - path.stat().st_mtime < STALE_AFTER_S
-    return False
+    except FileNotFoundError:
+        return False
 
 
 def live_workers(layout: Layout) -> list[str]:
     """Return the jobs whose workers are at work at present."""
-    return sorted(p.stem for p in layout.worker("x").parent.glob("[!.]*.json") if _held(p))
+    return sorted(p.stem for p in layout.worker("x").parent.glob("[!.]*.json") if is_held(p))

@@ -29,6 +29,11 @@ def is_local(who: dict[str, Any]) -> bool:
     return who.get("host") == socket.gethostname()
 
 
+def is_same(one: dict[str, Any], other: dict[str, Any]) -> bool:
+    """Whether both name the same process (see :func:`identity`)."""
+    return bool(one) and all(one.get(name) == other.get(name) for name in ("host", "pid", "born"))
+
+
 def is_alive(who: dict[str, Any]) -> bool:
     """Whether exactly that process still runs here; a number that was given out again does not count."""
     if not is_local(who):

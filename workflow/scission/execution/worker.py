@@ -14,10 +14,18 @@ from typing import Any
 
 from scission.execution.guard import Guard, StoppedError
 from scission.execution.layout import Layout, read_json, write_json
-from scission.execution.ledger import Ledger, fulfilled, record_kind
-from scission.execution.markers import claim, clear_running, earlier_starts, now, pending_request
+from scission.execution.ledger import Ledger, record_kind
+from scission.execution.markers import (
+    Claim,
+    ClaimLostError,
+    claim,
+    clear_running,
+    earlier_starts,
+    now,
+    pending_request,
+)
+from scission.execution.needs import granted, is_short, needs_again, same_skip, why_no_reference
 from scission.execution.outcomes import RESOURCE_REASONS, Outcome, write_failure
-from scission.execution.processes import identity
 from scission.execution.publish import publish
 from scission.records.store import Record
 
@@ -57,6 +65,7 @@ class Attempt:
     layout: Layout
     job: str
     guard: Guard
+    claim: Claim
     number: int = 1
     last: bool = True
     limits: Limits = field(default_factory=Limits)
@@ -89,7 +98,9 @@ class Attempt:
         )
 
     def keep(self, record: Record) -> None:
-        """Note a record that needs nothing."""
+        """Note a record that needs nothing in this attempt; one that ran short may need the next one, also
+        when the run that would have made that attempt was killed."""
+        self.escalate |= is_short(record) and granted(record) <= self.number
         self.results[record.key] = record.status
         clear_running(self.layout, record.key)
 
@@ -129,7 +140,7 @@ class Attempt:
         print(
             f"{now()} {task['kind']} {task['key']} {answer['status']} {answer.get('reason', '')}", flush=True
         )
-        write_json(self.layout.worker(self.job), identity() | {"since": now(), **self.summary()})
+        self.claim.tell(self.summary())
 
     def close_requests(self) -> None:
         """Remove the requests of the calculations that were done; those are in the records now."""
@@ -155,7 +166,8 @@ def run_job(
     """Do one job of the plan below ``results`` (results/<campaign>); return its exit status.
 
     0: the summary is written and every point of the job has a record.  75: points ran out of time or
-    memory and another attempt may do better.  128 + signal: told to stop; what is done is kept.
+    memory and another attempt may do better, or another worker took the job over.  128 + signal: told
+    to stop; what is done is kept.
 
     Raises:
         FileNotFoundError: the plan has no such job.
@@ -167,14 +179,17 @@ def run_job(
         raise FileNotFoundError(
             f"{layout.job_plan(job)}: the plan has no job {job!r}; run `scission check` again"
         )
-    with claim(layout, job), Guard(layout.folder, job, runner) as guard:
-        work = Attempt(layout, job, guard, attempt, last_attempt, limits or Limits())
+    with claim(layout, job) as mine, Guard(layout.folder, job, runner, mine.refresh) as guard:
+        work = Attempt(layout, job, guard, mine, attempt, last_attempt, limits or Limits())
         work.physics_version = (read_json(layout.plan / "plan.json") or {}).get("physics_version")
         try:
             _do(plan, work, walk)
         except StoppedError as stop:
             print(f"{now()} {stop}", flush=True)
             return 128 + stop.signum
+        except ClaimLostError as lost:
+            print(f"{now()} {lost}", flush=True)
+            return TRY_AGAIN
         work.close_requests()
     if work.escalate and not last_attempt:
         return TRY_AGAIN
@@ -257,8 +272,9 @@ def _examine(item: Task, work: Attempt) -> tuple[str, Task]:
     record = store.read("point", item["key"], arrays=False)
     task = {**item, "reference_stamp": reference.stamp if reference else ""}
     if reference is None or reference.status != "converged":
-        if record is None or not _same_skip(record, task, work):
-            work.skip(task, _why_no_reference(item, reference))
+        request = pending_request(work.layout, item["key"])
+        if record is None or not same_skip(record, task["reference_stamp"], request):
+            work.skip(task, why_no_reference(item["reference_key"], reference))
         else:
             work.keep(record)
         return "nothing", task
@@ -269,33 +285,3 @@ def _examine(item: Task, work: Attempt) -> tuple[str, Task]:
         return "again", task if request else {"remedy": record.remedy, **task}
     work.keep(record)
     return "nothing", task
-
-
-def needs_again(
-    record: Record, reference_stamp: str, job_attempt: int, request: dict[str, Any] | None
-) -> bool:
-    """Whether a point that has a record must be computed again.
-
-    That is so when its reference has changed, a person asks for it, or it ran out of time or memory
-    in an attempt that granted less.
-    """
-    if record.reference_stamp != reference_stamp:
-        return True
-    if request is not None and not fulfilled(record, request["id"]):
-        return True
-    short = record.status == "failed" and record.reason in RESOURCE_REASONS
-    return short and job_attempt > int(record.provenance.get("job_attempt", 1))
-
-
-def _same_skip(record: Record, task: Task, work: Attempt) -> bool:
-    """Whether the record already says that this reference did not succeed."""
-    request = pending_request(work.layout, task["key"])
-    asked = request is not None and not fulfilled(record, request["id"])
-    return record.status == "skipped" and record.reference_stamp == task["reference_stamp"] and not asked
-
-
-def _why_no_reference(item: Task, reference: Record | None) -> str:
-    if reference is None:
-        return f"reference {item['reference_key']} has no record"
-    words = reference.message or reference.reason
-    return f"reference {item['reference_key']} is {reference.status}: {words}"
