@@ -84,10 +84,10 @@ def read_json(path: Path) -> dict[str, Any] | None:
     return data if isinstance(data, dict) else None
 
 
-def write_json(path: Path, data: dict[str, Any]) -> None:
-    """Write a small JSON file whole or not at all.
+def write_json(path: Path, data: dict[str, Any], durable: bool = True) -> None:
+    """Write a small JSON file whole or not at all; markers of a process at work need not be durable.
 
     Raises:
         OSError: the folder cannot be written or the disk is full.
     """
-    write_whole(path, json.dumps(data, indent=1).encode("utf-8"))
+    write_whole(path, json.dumps(data, indent=1).encode("utf-8"), durable)

@@ -28,7 +28,8 @@ def earlier_starts(layout: Layout, key: str) -> int:
 
 def mark_running(layout: Layout, key: str, attempt: int, job: str) -> None:
     """Say that the calculation of ``key`` is being started for the ``attempt``-th time."""
-    write_json(layout.running(key), {"attempt": attempt, "job": job, "started": now(), **identity()})
+    marker = {"attempt": attempt, "job": job, "started": now(), **identity()}
+    write_json(layout.running(key), marker, durable=False)  # after a loss of power nothing is running
 
 
 def clear_running(layout: Layout, key: str) -> None:
@@ -73,7 +74,7 @@ class Claim:
 
     def tell(self, facts: dict[str, Any]) -> None:
         """Add facts about the progress of the job."""
-        write_json(self.path, self.who | {"since": now(), **facts})
+        write_json(self.path, self.who | {"since": now(), **facts}, durable=False)
 
     def refresh(self) -> None:
         """Show now and then that the worker lives.
@@ -127,9 +128,23 @@ def is_held(path: Path) -> bool:
     if holder is not None and is_local(holder):
         return is_alive(holder)
     try:
-        return time.time() - path.stat().st_mtime < STALE_AFTER_S
+        return _is_fresh(path, path.stat().st_mtime)
     except FileNotFoundError:
         return False
+
+
+_AHEAD: dict[Path, tuple[float, float]] = {}
+"""Claims whose time lies ahead of this machine's clock: that time, and when it was first seen (monotonic, s)."""
+
+
+def _is_fresh(path: Path, refreshed: float) -> bool:
+    """Whether a claim was refreshed lately; where clocks do not agree, only watching it tells."""
+    age = time.time() - refreshed
+    if age >= 0.0:
+        return age < STALE_AFTER_S
+    if _AHEAD.get(path, (None,))[0] != refreshed:
+        _AHEAD[path] = refreshed, time.monotonic()
+    return time.monotonic() - _AHEAD[path][1] < STALE_AFTER_S
 
 
 def live_workers(layout: Layout) -> list[str]:

@@ -9,6 +9,8 @@ import socket
 import sys
 import time
 from contextlib import suppress
+from functools import cache
+from pathlib import Path
 from typing import Any
 
 import psutil
@@ -19,9 +21,30 @@ _PR_SET_PDEATHSIG = 1
 
 
 def identity(pid: int | None = None) -> dict[str, Any]:
-    """Return what identifies a process for good: host, number and start time (seconds since 1970)."""
+    """Return what identifies a process for good: host, start of the system, number and start time (s).
+
+    Where the system tells, the start time counts from the start of the system: a clock that is set anew must not make
+    a process look like another.
+    """
     process = psutil.Process(pid)
-    return {"host": socket.gethostname(), "pid": process.pid, "born": process.create_time()}
+    return {"host": socket.gethostname(), "boot": _boot(), "pid": process.pid, "born": _born(process)}
+
+
+@cache
+def _boot() -> str:
+    """Return what identifies the time since the system was started, "" where nothing does."""
+    with suppress(OSError):
+        return Path("/proc/sys/kernel/random/boot_id").read_text(encoding="ascii").strip()
+    return ""
+
+
+def _born(process: psutil.Process) -> float:
+    """Return when a process started, s since the system did on Linux, since 1970 elsewhere."""
+    try:
+        stat = Path(f"/proc/{process.pid}/stat").read_bytes()
+    except FileNotFoundError:
+        return float(process.create_time())
+    return int(stat.rpartition(b")")[2].split()[19]) / os.sysconf("SC_CLK_TCK")  # field 22 of proc(5)
 
 
 def is_local(who: dict[str, Any]) -> bool:
@@ -40,7 +63,7 @@ def is_alive(who: dict[str, Any]) -> bool:
         return False
     try:
         process = psutil.Process(int(who["pid"]))
-        same = abs(process.create_time() - float(who["born"])) < _START_TOLERANCE_S
+        same = abs(_born(process) - float(who["born"])) < _START_TOLERANCE_S and who.get("boot") == _boot()
         return same and process.status() != psutil.STATUS_ZOMBIE
     except (psutil.Error, KeyError, TypeError, ValueError):
         return False

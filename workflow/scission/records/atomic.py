@@ -20,18 +20,21 @@ def temporary_beside(path: Path) -> Path:
     return path.with_name(f".{path.name}.{os.getpid()}-{secrets.token_hex(6)}{TEMPORARY_SUFFIX}")
 
 
-def write_whole(path: Path, data: bytes) -> None:
+def write_whole(path: Path, data: bytes, durable: bool = True) -> None:
     """Put ``data`` at ``path``; whoever reads it sees the old file or the new one, never a mixture.
+
+    Only what means nothing once its process has ended may be other than ``durable``: it is not flushed to the disk,
+    so that a machine that loses power may leave an empty file.
 
     Raises:
         UnwritableError: the folder cannot be written or the disk is full; ``path`` is as it was before.
     """
-    with replacing(path) as temporary, temporary.open("xb") as handle:
+    with replacing(path, durable) as temporary, temporary.open("xb") as handle:
         handle.write(data)
 
 
 @contextmanager
-def replacing(path: Path) -> Iterator[Path]:
+def replacing(path: Path, durable: bool = True) -> Iterator[Path]:
     """Give a temporary path to write to; rename it to ``path`` when the block ends well.
 
     When the block raises, the temporary file is removed and ``path`` stays as it was.
@@ -43,7 +46,8 @@ def replacing(path: Path) -> Iterator[Path]:
     try:
         path.parent.mkdir(parents=True, exist_ok=True)
         yield temporary
-        _flush(temporary)
+        if durable:
+            _flush(temporary)
         os.replace(temporary, path)
     except OSError as error:
         raise _explained(error, path) from error
