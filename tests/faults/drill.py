@@ -89,7 +89,8 @@ def drill(name: str, folder: Path, seed: int, undisturbed: Disturbed) -> Outcome
     seconds = time.monotonic() - started
     tables = campaign.kept or {}
     missing = compare.lost(tables, undisturbed.kept)
-    unlike = stuck or list(compare.differences(tables, undisturbed.kept))
+    remarks = ("notes",) if campaign.retried else ()
+    unlike = stuck or compare.differences(tables, undisturbed.kept, remarks)
     outcome = Outcome(name, campaign.runs - 1, missing, twice(campaign, undisturbed), unlike, seconds, remark)
     campaign.clean()
     return outcome

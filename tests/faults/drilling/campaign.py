@@ -59,6 +59,8 @@ class Disturbed(Campaign):
         self.journal = folder / "journal.txt"
         self.random = random.Random(seed)
         self.runs = 0
+        self.retried = False
+        """Whether points were computed with a remedy, which their remarks then tell."""
         self.status = None
         """Exit status of the latest run that came to its end."""
         self.told: list[str] = []
@@ -98,7 +100,7 @@ class Disturbed(Campaign):
             except subprocess.TimeoutExpired:
                 raise StuckError(f"not done after {LIMIT_S:g} s") from None
             if done.returncode == POINTS_FAILED:
-                self.runs += 1
+                self.runs, self.retried = self.runs + 1, True
                 done = self.retry()
             self.status = done.returncode
         if self.status != GOOD:
