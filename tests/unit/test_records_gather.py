@@ -9,6 +9,7 @@ import numpy as np
 import pytest
 import xarray
 from scission.records.gather import gather
+from scission.records.recall import recall
 from scission.records.schema import POINT_TEXTS, SCALARS
 from scission.records.store import Record, Store
 
@@ -168,11 +169,14 @@ def test_a_lost_point_counts_the_start_that_its_marker_tells(tmp_path):
     store = Store(tmp_path)
     point = planned(n=1)[0]
     (tmp_path / "running").mkdir()
-    (tmp_path / "running" / f"{point.key}.json").write_text('{"attempt": 2}')
+    told = '{"attempt": 2, "started": "2031-05-06T07:08:09Z", "host": "node3", "job": "correlate.x"}'
+    (tmp_path / "running" / f"{point.key}.json").write_text(told)
     gather([point], store, tmp_path / "c.h5", {})
 
     with h5py.File(tmp_path / "c.h5") as file:
         assert file["scans/one-oh/attempts"][0, 0] == 2
+    words = "last started at 2031-05-06T07:08:09Z, on node3, in job correlate.x"
+    assert recall(store, point.key).message == f"the job vanished and left nothing; {words}"
 
 
 def test_an_interrupted_gather_leaves_the_old_file(tmp_path, monkeypatch):

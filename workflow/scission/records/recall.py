@@ -3,11 +3,12 @@
 from __future__ import annotations
 
 import json
-from typing import Protocol
+from typing import Any, Protocol
 
 from scission.records.schema import REASONS
 from scission.records.store import Record, Store
 
+_TOLD = {"started": "at", "host": "on", "job": "in job"}
 _NEEDS_CONVERGENCE = ("energy", "energy_reference", "energy_correlation", "energy_triples")
 
 
@@ -40,8 +41,10 @@ def recall(store: Store, key: str, arrays: bool | tuple[str, ...] = False) -> Re
     if record is not None:
         return record
     reason = "damaged" if store.aside("point", key).exists() else "lost"
-    attempts = _marked_attempts(store, key)
-    return Record(key, "point", "lost", reason=reason, message=REASONS[reason], attempts=attempts)
+    marker = _marker(store, key)
+    attempts = _marked_attempts(marker)
+    message = REASONS[reason] + _last_start(marker)
+    return Record(key, "point", "lost", reason=reason, message=message, attempts=attempts)
 
 
 def recall_point(store: Store, point: Planned, arrays: bool | tuple[str, ...] = False) -> Record:
@@ -70,11 +73,28 @@ def settled_scalars(record: Record) -> dict[str, float]:
     return {name: value for name, value in record.scalars.items() if name not in _NEEDS_CONVERGENCE}
 
 
-def _marked_attempts(store: Store, key: str) -> int:
+def _marker(store: Store, key: str) -> dict[str, Any] | None:
+    """What the last start of a calculation left; {} if a kill cut it short, None if it never started."""
     try:
         marker = json.loads((store.folder / "running" / f"{key}.json").read_text(encoding="utf-8"))
-        return int(marker["attempt"])
     except FileNotFoundError:
+        return None
+    except ValueError:
+        return {}
+    return marker if isinstance(marker, dict) else {}
+
+
+def _marked_attempts(marker: dict[str, Any] | None) -> int:
+    if marker is None:
         return 0
+    try:
+        return int(marker["attempt"])
     except (ValueError, KeyError, TypeError):
-        return 1  # a marker that a kill cut short: it was started, at least
+        return 1  # it was started, at least
+
+
+def _last_start(marker: dict[str, Any] | None) -> str:
+    if marker is None:
+        return "; it was never started"
+    told = [f"{word} {marker[name]}" for name, word in _TOLD.items() if marker.get(name)]
+    return "; last started " + ", ".join(told) if told else ""
