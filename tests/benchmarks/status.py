@@ -35,7 +35,10 @@ def make(folder: Path) -> None:
     (folder / "jobs").mkdir()
     for n in range(JOBS):
         bad = f'{{\n  "{key(n, "p")}": "unconverged"\n }}' if n % 20 == 0 else "{}"
-        text = f'{{\n "job": "j{n}",\n "total": 10,\n "done": 10,\n "not_good": {bad}\n}}'
+        slow = ",".join(f'["{key(10 * n + i, "p")}", {i}.5]' for i in range(5))
+        text = (
+            f'{{\n "job": "j{n}",\n "total": 10,\n "done": 10,\n "not_good": {bad},\n "slowest": [{slow}]\n}}'
+        )
         (folder / "jobs" / f"j{n}.json").write_text(text)
 
 

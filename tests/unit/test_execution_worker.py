@@ -174,3 +174,13 @@ def test_budgets_leave_time_for_others_and_never_vanish():
     assert limits.budget_s(0.0) == 300.0
     assert limits.budget_s(590.0) == 150.0
     assert limits.memory_mb == 750.0
+
+
+def test_a_summary_names_what_took_longest(tmp_path):
+    """At most five, the longest first, with seconds; for status, which opens no record."""
+    lay(tmp_path, [point(f"p{n}", drill="hang", budget_s=0.1 * n) for n in (1, 3, 2)] + [point("aa")] * 3)
+    run(tmp_path)
+    told = read_json(Layout(tmp_path).job_done(JOB))["slowest"]
+
+    assert [key for key, _ in told[:3]] == ["p3", "p2", "p1"]
+    assert told[0][1] > 0.3

@@ -132,6 +132,20 @@ def test_the_slowest_points_come_from_the_table_of_points(tmp_path):
     assert slowest(path, 2) == []
 
 
+def test_the_slowest_points_are_told_while_others_run(layout):
+    """Of all jobs, finished or at work, from their small files; no record is opened, they are all empty here."""
+    write_json(layout.job_done("correlate.a"), {"not_good": {}, "slowest": [[key(6), 80.0], [key(7), 2.0]]})
+    write_json(layout.job_done("reference.b"), {"not_good": {}, "slowest": [[key(2, "r"), 30.0]]})
+    with claim(layout, "correlate.c") as mine:
+        mine.tell({"slowest": [[key(8), 3600.0]]})
+        text = status_text(Watcher(layout).look(), layout)
+
+    assert (
+        "slowest points: bond cc 3 (60 min); bond cc 1 (80 s); reference of bond hf 3 (30 s); bond cc 2"
+        in text
+    )
+
+
 def test_many_scans_are_summed_by_level_unless_all_are_asked_for(tmp_path):
     """A hundred levels are listed only on request; the sum is the same."""
     made = plan(tmp_path / "wide", levels=[f"l{i}" for i in range(100)], points=1)

@@ -11,9 +11,11 @@ import json
 import os
 import time
 from collections import defaultdict
-from collections.abc import Collection, Iterable, Iterator
+from collections.abc import Collection, Container, Iterable, Iterator
 from dataclasses import dataclass, field
 from datetime import datetime
+from itertools import chain
+from operator import itemgetter
 from pathlib import Path
 
 from scission.execution.layout import Layout, read_json
@@ -21,6 +23,9 @@ from scission.execution.markers import live_workers
 
 WINDOW_S = 900.0
 """Throughput is that of the last so many seconds."""
+
+MOST_SLOW = 5
+"""How many finished calculations that took longest are told."""
 
 _SAMPLED = 2000
 """Times of records are looked up for about so many; keys are digests, so folders are fair samples."""
@@ -50,7 +55,7 @@ class Count:
 
 @dataclass(frozen=True)
 class AtWork:
-    """One calculation at work: what it is, and for how many seconds."""
+    """One calculation: what it is, and for how many seconds it has been at work, or took."""
 
     what: str
     seconds: float
@@ -58,13 +63,17 @@ class AtWork:
 
 @dataclass(frozen=True)
 class Snapshot:
-    """Counts by (scan, level), of the references, jobs and calculations at work, records a second."""
+    """Counts by (scan, level), of the references, jobs and calculations at work, records a second.
+
+    ``slowest`` are the finished calculations that took longest, as far as jobs have told.
+    """
 
     groups: dict[tuple[str, str], Count]
     references: Count
     jobs: list[str]
     at_work: list[AtWork]
     per_second: float
+    slowest: list[AtWork]
 
     @property
     def total(self) -> Count:
@@ -90,6 +99,14 @@ class Planned:
     references: list[str] = field(default_factory=list)
 
 
+@dataclass(frozen=True)
+class Told:
+    """What the file of a job says: keys without a good result, and those that took longest (s)."""
+
+    bad: frozenset[str] = frozenset()
+    slowest: tuple[tuple[str, float], ...] = ()
+
+
 Plan = dict[tuple[str, str], Planned]
 
 
@@ -99,7 +116,7 @@ class Watcher:
 
     layout: Layout
     _planned: tuple[int, Plan] = (0, {})
-    _told: dict[str, tuple[int, frozenset[str]]] = field(default_factory=dict)
+    _told: dict[str, tuple[int, Told]] = field(default_factory=dict)
 
     def look(self) -> Snapshot:
         """Return the present state.
@@ -107,14 +124,20 @@ class Watcher:
         Raises:
             FileNotFoundError: the campaign has no plan yet.
         """
-        plan, bad = self._plan(), self._not_good()
+        plan, told = self._plan(), list(self._summaries())
+        bad = set[str]().union(*(summary.bad for summary in told))
         points, references = (_keys(self.layout.folder / name) for name in ("records", "references"))
         jobs = live_workers(self.layout)
         markers = dict(_markers(self.layout, set(jobs)))
         groups = {group: _count(planned.keys, points, bad, markers) for group, planned in plan.items()}
         built_on = {key for planned in plan.values() for key in planned.references}
         count = _count(built_on, references, bad, markers)
-        return Snapshot(groups, count, jobs, _at_work(plan, markers), _pace(self.layout.folder))
+        slowest = dict(
+            heapq.nlargest(MOST_SLOW, chain.from_iterable(s.slowest for s in told), key=itemgetter(1))
+        )
+        named, pace = _named(plan, {**slowest, **markers}), _pace(self.layout.folder)
+        at_work, took = (_longest(seconds, named) for seconds in (markers, slowest))
+        return Snapshot(groups, count, jobs, at_work, pace, took)
 
     def _plan(self) -> Plan:
         path = self.layout.plan / "points.csv"
@@ -124,33 +147,31 @@ class Watcher:
                 self._planned = changed, _read_plan(handle)
         return self._planned[1]
 
-    def _not_good(self) -> set[str]:
-        """Return the keys of records without a good result, as far as jobs have told."""
-        bad: set[str] = set()
+    def _summaries(self) -> Iterator[Told]:
+        """Give what jobs, finished and at work, have told."""
         for folder in (self.layout.job_done("x").parent, self.layout.worker("x").parent):
             for entry in _entries(folder, ".json"):
-                bad |= self._told_by(entry)
-        return bad
+                yield self._told_by(entry)
 
-    def _told_by(self, entry: os.DirEntry[str]) -> frozenset[str]:
+    def _told_by(self, entry: os.DirEntry[str]) -> Told:
         try:
             changed = entry.stat().st_mtime_ns
             kept = self._told.get(entry.path)
             if kept is None or kept[0] != changed:
                 with open(entry.path, "rb", buffering=0) as handle:  # half the time of pathlib for 10^4 files
-                    kept = self._told[entry.path] = changed, _keys_in(handle.read())
+                    kept = self._told[entry.path] = changed, _told_in(handle.read())
         except FileNotFoundError:  # a worker that has just ended
-            return frozenset()
+            return Told()
         return kept[1]
 
 
-def _keys_in(text: bytes) -> frozenset[str]:
-    if b'"not_good": {}' in text or b'"not_good"' not in text:  # nearly all: spares reading them as JSON
-        return frozenset()
+def _told_in(text: bytes) -> Told:
     try:
-        return frozenset(json.loads(text)["not_good"])
-    except (ValueError, KeyError, TypeError):  # not a job's file; the counts then lack it
-        return frozenset()
+        content = json.loads(text)
+        slowest = [(str(key), float(seconds)) for key, seconds in content.get("slowest", ())]
+        return Told(frozenset(content.get("not_good", ())), tuple(slowest))
+    except (ValueError, KeyError, TypeError, AttributeError):  # not a job's file; the counts then lack it
+        return Told()
 
 
 def _read_plan(handle: Iterable[str]) -> Plan:
@@ -201,16 +222,21 @@ def _markers(layout: Layout, jobs: set[str]) -> Iterator[tuple[str, float]]:
             yield entry.name.removesuffix(".json"), max(0.0, now - started)
 
 
-def _at_work(plan: Plan, markers: dict[str, float]) -> list[AtWork]:
-    """Return what is at work, the longest first."""
+def _named(plan: Plan, keys: Container[str]) -> dict[str, str]:
+    """Return what some keys are, in words."""
     names: dict[str, str] = {}
-    for (scan, level), planned in plan.items() if markers else ():
+    for (scan, level), planned in plan.items() if keys else ():
         for number, key, reference in zip(planned.numbers, planned.keys, planned.references, strict=True):
-            if reference in markers:
+            if reference in keys:
                 names.setdefault(reference, f"reference of {scan} {level} {number}")
-            if key in markers:
+            if key in keys:
                 names[key] = f"{scan} {level} {number}"
-    found = [AtWork(names.get(key, key), age) for key, age in markers.items()]
+    return names
+
+
+def _longest(seconds: dict[str, float], names: dict[str, str]) -> list[AtWork]:
+    """Return calculations, the longest first."""
+    found = [AtWork(names.get(key, key), age) for key, age in seconds.items()]
     return sorted(found, key=lambda item: -item.seconds)
 
 

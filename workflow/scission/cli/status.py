@@ -111,7 +111,9 @@ def _slowest_lines(snapshot: Snapshot, layout: Layout) -> list[str]:
     from scission.execution.progress import duration
 
     at_work = [f"{item.what} ({duration(item.seconds)})" for item in snapshot.at_work[:_LISTED]]
-    finished = slowest(layout.folder / "tables" / "points.csv", _LISTED) if not snapshot.jobs else []
-    took = [f"{what} ({duration(seconds)})" for what, seconds in finished]
+    finished = [(item.what, item.seconds) for item in snapshot.slowest]
+    if not finished:  # summaries of an earlier version do not tell
+        finished = slowest(layout.folder / "tables" / "points.csv", _LISTED)
+    took = [f"{what} ({duration(seconds)})" for what, seconds in finished[:_LISTED]]
     lines = [("longest at work", at_work), ("slowest points", took)]
     return [f"{name}: {'; '.join(items)}" for name, items in lines if items]

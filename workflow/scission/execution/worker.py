@@ -5,10 +5,12 @@ A job that is interrupted is simply run again: whatever has its record is not co
 
 from __future__ import annotations
 
+import heapq
 import signal
 import time
 from collections.abc import Callable
 from dataclasses import dataclass, field
+from operator import itemgetter
 from pathlib import Path
 from typing import Any
 
@@ -31,6 +33,8 @@ from scission.records.store import Record
 
 TRY_AGAIN = 75
 """Exit status that asks the engine for another attempt with more time and memory."""
+SLOWEST = 5
+"""How many calculations a summary names that took longest, with their wall time in s."""
 _GUARD_MB = 200.0
 """Memory of the guard itself and of the engine's own process in the job."""
 
@@ -73,6 +77,7 @@ class Attempt:
     starts: dict[str, int] = field(default_factory=dict)
     requests: dict[str, dict[str, Any]] = field(default_factory=dict)
     results: dict[str, str] = field(default_factory=dict)
+    times: dict[str, float] = field(default_factory=dict)
     chains: list[dict[str, Any]] = field(default_factory=list)
     total: int = 0
     escalate: bool = False
@@ -102,6 +107,7 @@ class Attempt:
         when the run that would have made that attempt was killed."""
         self.escalate |= is_short(record) and granted(record) <= self.number
         self.results[record.key] = record.status
+        self.times[record.key] = record.scalars.get("wall_s") or 0.0
         clear_running(self.layout, record.key)
 
     def _task(self, item: Task) -> Task:
@@ -135,6 +141,7 @@ class Attempt:
 
     def _note(self, task: Task, answer: dict[str, Any]) -> None:
         self.results[task["key"]] = answer["status"]
+        self.times[task["key"]] = answer.get("wall_s") or 0.0
         if answer["status"] == "failed" and answer.get("reason") in RESOURCE_REASONS:
             self.escalate = True
         print(
@@ -151,7 +158,9 @@ class Attempt:
     def summary(self) -> dict[str, Any]:
         """Return the counts and the keys without a good result, for progress and status."""
         bad = {key: status for key, status in self.results.items() if status != "converged"}
-        return {"job": self.job, "total": self.total, "done": len(self.results), "not_good": bad}
+        longest = heapq.nlargest(SLOWEST, self.times.items(), key=itemgetter(1))
+        counts = {"job": self.job, "total": self.total, "done": len(self.results), "not_good": bad}
+        return counts | {"slowest": [(key, round(seconds, 3)) for key, seconds in longest]}
 
 
 def run_job(
