@@ -7,9 +7,13 @@ import os
 import shutil
 import subprocess
 import tempfile
+import time
+from collections import Counter
 from pathlib import Path
 
 import pytest
+from scission.execution.layout import read_json
+from scission.execution.processes import is_alive
 from small_campaign import COSTS, Campaign
 
 pytestmark = pytest.mark.cluster
@@ -51,15 +55,68 @@ def run(campaign, *words, drill=None):
     return campaign.finish(campaign.command(*words), drill, timeout=500)
 
 
-@pytest.mark.usefixtures("slurm")
-def test_a_campaign_through_slurm_gives_the_tables_of_the_local_machine(folder, tmp_path):
-    """Same points, same numbers, same words; only costs differ."""
-    (folder / "good").mkdir(exist_ok=True)
-    there, here = Campaign(folder / "good"), Campaign(tmp_path)
-    process = run(there)
+def start(campaign, *words, **environment):
+    """Start a campaign on the cluster without waiting for it."""
+    words = campaign.command("run", str(campaign.file), "--results", str(campaign.results), *QUICK, *words)
+    return subprocess.Popen(
+        words,
+        env=campaign.environment(**environment),
+        stderr=subprocess.PIPE,
+        text=True,
+        start_new_session=True,
+    )
 
-    assert process.returncode == 0, process.stderr
-    assert here.run().returncode == 0
+
+def queue(*words):
+    """Comment and state of the jobs that wait or run."""
+    words = ["squeue", "--noheader", "--format=%i %T %k", *words]
+    lines = subprocess.run(words, check=True, capture_output=True, text=True).stdout.splitlines()
+    return [line.split(maxsplit=2) for line in lines]
+
+
+def wait_for(condition, timeout_s=180.0):
+    """Wait until something is so."""
+    deadline = time.monotonic() + timeout_s
+    while not condition():
+        assert time.monotonic() < deadline, f"waited in vain; in the queue: {queue()}"
+        time.sleep(0.2)
+
+
+def calculations(journal):
+    """How often each correlated calculation started, and ended."""
+    lines = [line.split() for line in journal.read_text().splitlines()]
+    return Counter((key, status) for kind, key, _, status in lines if kind == "correlate")
+
+
+@pytest.mark.usefixtures("slurm")
+def test_after_kill_9_of_the_command_the_next_one_computes_nothing_twice(folder, tmp_path):
+    """Jobs at work are waited for, those that wait are taken out; the tables are those of the local machine."""
+    (folder / "killed").mkdir(exist_ok=True)
+    there, here = Campaign(folder / "killed"), Campaign(tmp_path)
+    journal = folder / "killed" / "journal"
+    small = ("--config", "block_seconds=0.01")  # a job a point: more of them than the node has cores
+    drill = {there.key("cc", n): "pause:8" for n in range(1, 7)}
+    first = start(there, *small, drill=drill, SCISSION_DRILL_JOURNAL=str(journal))
+    wait_for(lambda: any(there.layout.running(key).exists() for key in drill))
+    wait_for(
+        lambda: {"RUNNING", "PENDING"} <= {state for _, state, comment in queue() if "correlate" in comment}
+    )
+    engine = read_json(there.layout.run_file)["engine"]
+    first.kill()
+    first.communicate()
+    wait_for(lambda: not is_alive(engine), 10.0)
+    left = {number for number, *_ in queue()}
+    again = start(there, *small, SCISSION_DRILL_JOURNAL=str(journal))
+    said = again.communicate(timeout=400)[1]
+
+    assert again.returncode == 0, said
+    assert left
+    assert "cancelling what an earlier run left in the queue" in said
+    assert "waiting for what an earlier run left at work: correlate." in said
+    assert queue() == []
+    assert {key for key, _ in calculations(journal)} == set(drill)
+    assert set(calculations(journal).values()) == {1}
+    assert here.run(*small).returncode == 0
     assert there.rows(without=COSTS) == here.rows(without=COSTS)
 
 
