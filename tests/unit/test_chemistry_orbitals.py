@@ -15,7 +15,7 @@ from scission.chemistry.orbitals import (
     state_overlap_any_spin,
     subspace_overlap,
 )
-from scission.chemistry.reference import carried
+from scission.chemistry.starts import carried
 
 SMALL = "6-31g"
 

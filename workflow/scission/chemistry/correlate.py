@@ -21,7 +21,7 @@ from .molecule import build_mole
 from .nevpt2 import nevpt2
 from .perturbation import second_order_energy
 from .recording import Stopwatch, guarded, record_of
-from .reference import carried
+from .starts import carried
 
 METHODS: dict[str, Callable[[dict[str, Any], Any, Record, int, Store], Solution]] = {
     "MP2": second_order_energy,

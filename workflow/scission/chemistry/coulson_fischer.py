@@ -17,8 +17,8 @@ from scission.units import ANGSTROM_IN_BOHR
 from . import scf
 from .molecule import build_mole
 from .recording import Stopwatch
-from .reference import carried
 from .stability import triplet_instability
+from .starts import carried
 
 TOLERANCE_ANGSTROM = 1e-4
 SCALAR = "coulson_fischer"

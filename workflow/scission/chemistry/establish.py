@@ -12,23 +12,21 @@ from scission.solution import Solution
 from . import scf
 from .bond_picture import describe_active_bond
 from .casscf import finish_casscf, solve_casscf
-from .compare import likeness
+from .compare import least_step, likeness
 from .molecule import build_mole, overlap_roots
 from .orbitals import Orbitals, not_orthonormal
 from .pictures import PICTURE_FUNCTIONS, solve_picture
 from .recording import Stopwatch, guarded, record_of
-from .reference import carried, lowdin, solve_reference
+from .reference import solve_reference
 from .solutions import solution_of_field
-
-LOWER = 1e-6
-"""By how much (hartree) another solution must lie lower to count as lower."""
+from .starts import carried, lowdin
 
 
 def establish_reference(task: dict[str, Any], store: Store, watch: Stopwatch) -> Record:
     """Compute a reference from the task's starts; return the record that should now stand.
 
     ``task["replace"]`` says when the new result takes the place of a record that is already there:
-    ``always``, ``lower`` (lower by more than 1e-6 hartree, or converged where the old one was not),
+    ``always``, ``lower`` (lower by more than convergence and grids explain, or converged where the old one was not),
     ``closer`` (same energy, more like the record ``task["closer_to"]``) or ``closer_state`` (more like it,
     at whatever energy).
     """
@@ -124,10 +122,10 @@ def _takes_place(task: dict[str, Any], store: Store, new: Record, old: Record) -
         return True
     step = new.scalars["energy"] - old.scalars["energy"]
     if task["replace"] == "lower":
-        return bool(step < -LOWER)
+        return bool(step < -least_step(task["spec"]))
     neighbour = _required(store, task["closer_to"])
     alike = likeness(neighbour, new) > likeness(neighbour, old) + 1e-3
-    return bool(alike and (task["replace"] == "closer_state" or step < LOWER))
+    return bool(alike and (task["replace"] == "closer_state" or step < least_step(task["spec"])))
 
 
 def _required(store: Store, key: str) -> Record:

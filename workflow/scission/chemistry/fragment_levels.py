@@ -19,8 +19,9 @@ from .casscf import MAX_MACRO_CYCLES, casci_object, finish_casscf
 from .correlate import METHODS
 from .molecule import build_mole, root_overlap
 from .recording import Stopwatch, inputs_of, provenance, record_of
-from .reference import UNRESTRICTED, solve_reference
+from .reference import solve_reference
 from .solutions import solution_of_field
+from .starts import UNRESTRICTED
 
 Array = NDArray[np.float64]
 

@@ -1,4 +1,4 @@
-"""Self-consistent references at one geometry: try starts, keep the right one, write the record.
+"""Self-consistent references at one geometry: try starts, keep the right one.
 
 The walk over a scan (:mod:`scission.chemistry.walk`) says from where to start and what counts as right.
 """
@@ -14,19 +14,17 @@ from pyscf import gto
 from scission.records.store import Record, Store
 
 from . import scf
-from .fragments import fragment_densities
 from .molecule import build_mole, root_overlap
 from .orbitals import Orbitals, state_overlap_any_spin
+from .starts import UNRESTRICTED, Start, carried, distinct, finished_parent, spin_density, starting_densities
 
 _SAME_ENERGY = 1e-7
-_DISTINCT = 1e-4
-_HOPELESS = 0.1
-"""Solutions this far (hartree) above the lowest one from fragments are not worth converging."""
+_ROUGH_ROOM = 0.005
+"""By how much (hartree) converging a rough start to its end may still lower it."""
 _ALIKE = 0.9
 """Below this overlap with the orbitals it was started from a determinant is another state."""
 _FLAT = 0.01
 """Below this curvature (hartree) an orbital's rotation costs so little that it may not have converged."""
-UNRESTRICTED = ("UHF", "UKS")
 
 
 def solve_reference(task: dict[str, Any], store: Store) -> tuple[Any, gto.Mole, str]:
@@ -39,14 +37,18 @@ def solve_reference(task: dict[str, Any], store: Store) -> tuple[Any, gto.Mole, 
     ``task["choose"]`` is ``first`` (the first start that converges, else the lowest) or ``lowest``;
     ``task["stability"]`` asks to follow internal instabilities of the one that was chosen, and
     ``task["polish"]`` to turn it along its flattest directions as well.
+
+    Raises:
+        RuntimeError: none of the starts is there.
     """
     mole = build_mole(task["molecule"], task["spec"]["basis"], np.array(task["positions"]))
     best: Any = None
     remark = ""
-    for label, field in candidates(task, store, mole):
+    first = task.get("choose") == "first"
+    for label, field in candidates(task, store, mole) if first else _lowest(task, store, mole):
         if best is None or _better(field, best):
             best, remark = field, label
-        if task.get("choose") == "first" and field.converged:
+        if first and field.converged:
             break
     if best is None:
         raise RuntimeError("no start was given from which the reference could be computed")
@@ -57,48 +59,50 @@ def solve_reference(task: dict[str, Any], store: Store) -> tuple[Any, gto.Mole, 
     return best, mole, remark
 
 
-def carried(record: Record, mole: gto.Mole) -> Orbitals:
-    """Return a record's orbitals carried to ``mole``: orthonormal there, as like the old ones as can be."""
-    _, inverse_root = root_overlap(mole)
-    return Orbitals(record.arrays["mo_lowdin"], record.arrays["mo_occ"]).transformed(inverse_root)
-
-
-def lowdin(record: Record) -> Orbitals:
-    """Return a record's orbitals in symmetrically orthogonalised basis functions."""
-    return Orbitals(record.arrays["mo_lowdin"], record.arrays["mo_occ"])
-
-
 def candidates(task: dict[str, Any], store: Store, mole: gto.Mole) -> Iterator[tuple[str, Any]]:
     """Yield (how it was started, converged or unconverged field) of each start, one after another."""
-    spec, remedy = task["spec"], task.get("remedy", "")
     for start in task["starts"]:
-        if "carry" in start:
-            parent = store.read("reference", start["carry"])
-            if parent is not None and parent.status == "converged":
-                yield f"carried from {parent.key}", _from_parent(task, mole, parent, remedy)
-        elif start.get("standing"):
-            own = store.read("reference", task["key"])
-            if own is not None and own.status == "converged":
-                field = scf.build_field(mole, spec)
-                yield (
-                    own.notes.get("start", ""),
-                    scf.put_orbitals(field, carried(own, mole), float(own.scalars["energy"])),
-                )
-        elif "engine" in start:
-            field = scf.build_field(mole, spec)
-            density = scf.default_density(field, start["engine"])
-            yield f"engine's {start['engine']} guess", scf.converge(field, density, remedy)
-        elif "broken" in start:
-            yield from _broken(spec, mole)
-        elif "fragments" in start and len(task["fragments"]) == 2:
-            yield from _from_fragments(task, mole, remedy)
+        parent = finished_parent(start, store)
+        if parent is not None:
+            yield f"carried from {parent.key}", _from_parent(task, mole, parent)
+            continue
+        for label, density in starting_densities(task, [start], store, mole):
+            yield label, _converged(task, mole, density)
 
 
-def _from_parent(task: dict[str, Any], mole: gto.Mole, parent: Record, remedy: str) -> Any:
+def _lowest(task: dict[str, Any], store: Store, mole: gto.Mole) -> Iterator[tuple[str, Any]]:
+    """Yield fields of the starts that may be the lowest, none that rough convergence leaves without a chance."""
+    if task["starts"] == [{"standing": True}]:
+        own = store.read("reference", task["key"])
+        if own is not None and own.status == "converged":
+            yield own.notes.get("start", ""), _standing(task, mole, own)
+        return
+    starts = list(starting_densities(task, task["starts"], store, mole))
+    ranked: list[tuple[float, Start]] = [(-np.inf, start) for start in starts]
+    if len(starts) > 1:
+        ranked = distinct(task["spec"], mole, starts)
+    best = np.inf
+    for energy, (label, density) in ranked:
+        if energy < best + _ROUGH_ROOM:
+            field = _converged(task, mole, density)
+            best = min(best, float(field.e_tot)) if field.converged else best
+            yield label, field
+
+
+def _converged(task: dict[str, Any], mole: gto.Mole, density: Any) -> Any:
+    return scf.converge(scf.build_field(mole, task["spec"]), density, task.get("remedy", ""))
+
+
+def _standing(task: dict[str, Any], mole: gto.Mole, own: Record) -> Any:
+    field = scf.build_field(mole, task["spec"])
+    return scf.put_orbitals(field, carried(own, mole), float(own.scalars["energy"]))
+
+
+def _from_parent(task: dict[str, Any], mole: gto.Mole, parent: Record) -> Any:
     """Converge from a parent's orbitals; where the result is another state, stay near with second order."""
     spec = task["spec"]
     start = carried(parent, mole)
-    field = scf.converge(scf.build_field(mole, spec), _spin_density(spec, start), remedy)
+    field = _converged(task, mole, spin_density(spec, start))
     if task.get("choose") != "first" or _likeness(field, start, mole) >= _ALIKE:
         return field
     near = scf.second_order(scf.build_field(mole, spec), *_as_engine(spec, start))
@@ -112,46 +116,6 @@ def _from_parent(task: dict[str, Any], mole: gto.Mole, parent: Record, remedy: s
 def _likeness(field: Any, start: Orbitals, mole: gto.Mole) -> float:
     root, _ = root_overlap(mole)
     return state_overlap_any_spin(start.transformed(root), scf.orbitals_of(field).transformed(root))[0]
-
-
-def _broken(spec: dict[str, Any], mole: gto.Mole) -> Iterator[tuple[str, Any]]:
-    """Yield the unrestricted solution that lies along the restricted determinant's triplet instability."""
-    if mole.spin != 0 or mole.nelectron < 2:
-        return
-    closed = {**spec, "reference": "RKS" if spec.get("functional") else "RHF"}
-    restricted = scf.converge(scf.build_field(mole, closed), None)
-    start = scf.broken_symmetry_start(restricted)
-    if start is not None:
-        yield "along the triplet instability", scf.converge(scf.build_field(mole, spec), start.density())
-
-
-def _from_fragments(task: dict[str, Any], mole: gto.Mole, remedy: str) -> Iterator[tuple[str, Any]]:
-    for label, density in _screened(task, mole):
-        field = scf.build_field(mole, task["spec"])
-        yield label, scf.converge(field, density, remedy)
-
-
-def _screened(task: dict[str, Any], mole: gto.Mole) -> Iterator[tuple[str, Any]]:
-    """Yield densities that start from the fragments, of distinct solutions only, lowest first.
-
-    Roughly converged Hartree-Fock tells them apart at a fraction of the cost, for Kohn-Sham at a tenth.
-    """
-    positions = np.array(task["positions"])
-    a, b = task["bonds"][0]
-    basis, axis = task["spec"]["basis"], positions[b] - positions[a]
-    plain = {**task["spec"], "reference": "UHF", "functional": None}
-    rough: list[tuple[float, str, Any]] = []
-    for label, density in fragment_densities(task["molecule"], basis, positions, task["fragments"], axis):
-        field = scf.roughly(scf.build_field(mole, plain), density)
-        rough.append((field.e_tot, label, np.asarray(field.make_rdm1())))
-    known: list[float] = []
-    for energy, label, density in sorted(rough, key=lambda r: r[0]):
-        if (
-            not any(abs(energy - e) < _DISTINCT for e in known)
-            and energy < (known or [energy])[0] + _HOPELESS
-        ):
-            known.append(energy)
-            yield label, density
 
 
 def _stable(field: Any) -> tuple[Any, float]:
@@ -173,13 +137,6 @@ def _stable(field: Any) -> tuple[Any, float]:
 def _equal_spins(field: Any) -> bool:
     """Whether an unrestricted singlet has the same orbitals for both spins: its own analysis is blind there."""
     return isinstance(field, scf.uhf.UHF) and field.mol.spin == 0 and abs(field.spin_square()[0]) < 1e-5
-
-
-def _spin_density(spec: dict[str, Any], orbitals: Orbitals) -> Any:
-    density = orbitals.density()
-    if spec["reference"] in UNRESTRICTED and density.ndim == 2:
-        return np.array([density / 2, density / 2])
-    return density
 
 
 def _as_engine(spec: dict[str, Any], orbitals: Orbitals) -> tuple[Any, Any]:

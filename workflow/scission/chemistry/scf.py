@@ -28,6 +28,7 @@ _POLISHED = 1e-8
 MAX_CYCLES = 60
 _ROUGH = 1e-5, 1e-2
 """Changes of energy (hartree) and gradients at which a field is good enough to be told from others."""
+_ROUGH_CYCLES = 30
 
 _SECOND_ORDER_CYCLES = 60
 _FOLLOWED = 5
@@ -82,6 +83,7 @@ def converge(field: Any, density: Array | None, remedy: str = "") -> Any:
 def roughly(field: Any, density: Array) -> Any:
     """Iterate a throw-away field from a density until its energy is good to about 1e-5 hartree."""
     field.conv_tol, field.conv_tol_grad = _ROUGH
+    field.max_cycle = _ROUGH_CYCLES
     field.kernel(dm0=density)
     return field
 

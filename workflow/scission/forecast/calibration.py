@@ -21,7 +21,7 @@ from scission.records.atomic import write_whole
 from scission.records.fileformat import DamagedRecordError, unpack
 
 CACHE = ".calibration.json"
-FORMAT = 1
+FORMAT = 2
 UNKNOWN = 3.0
 """Uncertainty, as a factor either way, of a method without records."""
 
@@ -39,8 +39,8 @@ _EXTRAPOLATION = 0.5
 """Error of a power law's exponent that is allowed for beyond the sizes that were seen."""
 
 _OPEN = ("UHF", "UKS", "ROHF")
-_REFERENCE_FIXED_S = {"RHF": 0.05, "ROHF": 0.08, "RKS": 0.15, "UHF": 0.1, "UKS": 0.3, "CASSCF": 0.2}
-_CORRELATION_FIXED_S = {"MP2": 0.05, "CCSD": 0.15, "CCSD(T)": 0.2, "FCI": 0.1, "NEVPT2": 0.05}
+_REFERENCE_FIXED_S = {"RHF": 0.05, "ROHF": 0.08, "RKS": 0.3, "UHF": 0.1, "UKS": 0.5, "CASSCF": 0.2}
+_CORRELATION_FIXED_S = {"MP2": 0.05, "CCSD": 0.2, "CCSD(T)": 0.25, "FCI": 0.1, "NEVPT2": 0.05}
 """What a calculation takes whatever its size: own measurement on hydrogen in cc-pVDZ, one core.  Blocks are
 sized without it, so that jobs of tiny points stay large."""
 
@@ -198,5 +198,5 @@ def expectation(work: dict[str, Any]) -> tuple[str, float]:
         return f"extra {work['calculation']}", correlate_seconds(work)
     if work["correlation"] == "none":
         raise KeyError("correlation")
-    fixed = _CORRELATION_FIXED_S.get(work["correlation"], 0.1) * (2.0 if spec["reference"] in _OPEN else 1.0)
+    fixed = _CORRELATION_FIXED_S.get(work["correlation"], 0.1) * (3.0 if spec["reference"] in _OPEN else 1.0)
     return f"{work['correlation']} on {spec['reference']}", fixed + correlate_seconds(work)

@@ -10,7 +10,7 @@ from typing import Any
 import numpy as np
 from numpy.typing import NDArray
 
-from scission.chemistry.compare import overlap_and_swap, stability_changes
+from scission.chemistry.compare import least_step, overlap_and_swap, stability_changes
 from scission.plan.identity import reference_key
 from scission.records.store import Record, Store
 
@@ -18,10 +18,6 @@ SMOOTH = 0.9
 """Neighbours whose occupied (or active) spaces overlap less than this are not the same state for sure."""
 
 _LEAVE_ORBITALS = ("finish", "label", "coulson_fischer")
-
-LOWER = 1e-6
-"""By how much (hartree) a solution must lie lower to count as lower: ten times the tightest agreement of
-energies converged from different starts."""
 
 
 @dataclass
@@ -48,6 +44,8 @@ class ChainState:
         self._touched: set[str] = set()
         self._before: dict[str, float] = {}
         self._proven: dict[str, float] = {}
+        self.least_step = least_step(chain["spec"])
+        self._tried: set[tuple[str, ...]] = set()
         self.notes: dict[str, dict[str, str]] = {}
         self.nodes = [
             Node(n["key"], n["coordinate"], np.array(n["positions"]), n["auxiliary"]) for n in chain["nodes"]
@@ -80,7 +78,7 @@ class ChainState:
     def lowered(self) -> dict[str, float]:
         """Energies (hartree, negative) by which records that stood before the walk were lowered."""
         changes = {n.key: self.energy(n) - self._before[n.key] for n in self.nodes if n.key in self._before}
-        return {key: step for key, step in changes.items() if step < -LOWER}
+        return {key: step for key, step in changes.items() if step < -self.least_step}
 
     def record(self, node: Node) -> Record | None:
         """Return the node's record, or ``None``."""
@@ -97,7 +95,7 @@ class ChainState:
         """Whether nobody has looked yet for an instability of the solution the node holds."""
         record = self.record(node)
         finished = record is not None and bool(record.diagnostics or record.absent)
-        return not finished and abs(self._proven.get(node.key, np.inf) - self.energy(node)) > LOWER
+        return not finished and abs(self._proven.get(node.key, np.inf) - self.energy(node)) > self.least_step
 
     def prove(self, node: Node) -> None:
         """Remember that the instabilities of the node's solution have been followed."""
@@ -133,6 +131,19 @@ class ChainState:
         self._again.discard(node.key)
         self._task(node, {"kind": "reference", "starts": starts, **options})
         return self.good(node)
+
+    def try_from(self, node: Node, parent: Node) -> bool:
+        """Start a node from ``parent``'s solution and keep what is lower; return whether that lowered it.
+
+        What has been tried before from the same solution onto the same one is not tried again.
+        """
+        before = self.energy(node)
+        stamps = [record.stamp if (record := self.record(n)) is not None else "" for n in (node, parent)]
+        attempt = (node.key, parent.key, *stamps)
+        if attempt not in self._tried:
+            self._tried.add(attempt)
+            self.solve(node, [{"carry": parent.key}], choose="lowest", replace="lower")
+        return self.energy(node) < before - self.least_step
 
     def swap(self, node: Node) -> None:
         """Exchange alpha and beta of a node's record."""

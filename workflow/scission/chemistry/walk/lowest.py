@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from typing import Any
 
-from .chain import LOWER, ChainState, Node
+from .chain import ChainState, Node
 
 ALIKE = 0.98
 """Neighbours that overlap less than this try each other's solution."""
@@ -50,7 +50,7 @@ def _follow_instabilities(state: ChainState) -> set[str]:
             continue
         before = state.energy(node)
         state.solve(node, [{"standing": True}], choose="lowest", replace="lower", stability=True)
-        if state.energy(node) < before - LOWER:
+        if state.energy(node) < before - state.least_step:
             lowered.add(node.key)
         state.prove(node)
     return lowered
@@ -69,7 +69,7 @@ def _walk(state: ChainState, anchor: Node) -> None:
             state.settled(node) and state.good(node) and not worth_trying(state, parent, node)
         ):
             continue
-        state.solve(node, [{"carry": parent.key}], choose="lowest", replace="lower")
+        state.try_from(node, parent)
 
 
 def worth_trying(state: ChainState, parent: Node, node: Node) -> bool:
@@ -86,16 +86,9 @@ def _exchange(state: ChainState, changed: set[str]) -> None:
                 continue
             if state.good(a) and state.good(b) and not worth_trying(state, a, b):
                 continue
-            again |= {n.key for n, other in ((b, a), (a, b)) if _try_neighbour(state, n, other)}
+            again |= {
+                n.key for n, other in ((b, a), (a, b)) if state.good(other) and state.try_from(n, other)
+            }
         if not again:
             return
         changed = again
-
-
-def _try_neighbour(state: ChainState, node: Node, neighbour: Node) -> bool:
-    """Start a node from its neighbour; return whether that lowered it."""
-    if not state.good(neighbour):
-        return False
-    before = state.energy(node)
-    state.solve(node, [{"carry": neighbour.key}], choose="lowest", replace="lower")
-    return state.energy(node) < before - LOWER
