@@ -7,6 +7,7 @@ from collections.abc import Sequence
 import h5py
 import numpy as np
 
+from scission.records.labels import label
 from scission.records.schema import Field
 
 _BLOCK = 128
@@ -31,7 +32,7 @@ class RaggedArray:
     @property
     def shape(self) -> tuple[int, ...]:
         """(n_points, largest row so far ...); empty if no row has come."""
-        self._flush()
+        self._finish_rows()
         return self._dataset.shape if self._dataset is not None else ()
 
     def put(self, index: int, row: np.ndarray) -> None:
@@ -42,25 +43,39 @@ class RaggedArray:
 
     def finish(self, item: Field, axes: Sequence[h5py.Dataset]) -> None:
         """Attach unit, meaning and axes once all rows are there."""
-        self._flush()
+        self._finish_rows()
         if self._dataset is None:
             return
-        self._dataset.attrs["units"] = item.unit
-        self._dataset.attrs["long_name"] = item.meaning
+        label(self._dataset, units=item.unit, long_name=item.meaning)
         for index, axis in enumerate(axes):
             self._dataset.dims[index].attach_scale(axis)
+
+    def _finish_rows(self) -> None:
+        if self._dataset is not None or not self._waiting:
+            self._flush()
+            return
+        # All rows are in memory: written in one piece, which costs a third of one that grows.
+        block = np.full((self._n_points, *self._sizes()), np.nan)
+        self._lay(block, 0)
+        self._dataset = self._group.create_dataset(self._name, data=block, fillvalue=np.nan)
 
     def _flush(self) -> None:
         if not self._waiting:
             return
-        sizes = np.max([row.shape for row in self._waiting.values()], axis=0)
-        dataset = self._grown(tuple(int(size) for size in sizes))
+        dataset = self._grown(self._sizes())
         low, high = min(self._waiting), max(self._waiting) + 1
         block = dataset[low:high]
+        self._lay(block, low)
+        dataset[low:high] = block
+
+    def _sizes(self) -> tuple[int, ...]:
+        return tuple(int(size) for size in np.max([row.shape for row in self._waiting.values()], axis=0))
+
+    def _lay(self, block: np.ndarray, low: int) -> None:
+        """Lay the waiting rows into ``block``, whose first row is number ``low``."""
         for index, row in self._waiting.items():
             block[index - low] = np.nan
-            block[(index - low, *(slice(size) for size in row.shape))] = row
-        dataset[low:high] = block
+            block[index - low][tuple(slice(size) for size in row.shape)] = row
         self._waiting.clear()
 
     def _grown(self, sizes: tuple[int, ...]) -> h5py.Dataset:

@@ -9,6 +9,7 @@ from typing import TYPE_CHECKING
 import h5py
 import numpy as np
 
+from scission.records.labels import label
 from scission.records.ragged import RaggedArray
 from scission.records.recall import Planned, settled_scalars
 from scission.records.schema import ARRAYS, POINT_TEXTS, SCALARS, TOO_LARGE_TO_GATHER, Field
@@ -102,14 +103,14 @@ class ScanGroup:
             known = diagnostics.get(name)
             item = Field(name, "f8", known.unit if known else "", (), known.meaning if known else name)
             dataset = self._write(item, values)
-            dataset.attrs["source"] = known.source if known else ""
+            label(dataset, source=known.source if known else "")
         self._finish_arrays()
 
     def _write(self, item: Field, values: np.ndarray) -> h5py.Dataset:
         dtype = _TEXT if item.dtype == "str" else item.dtype
         dataset = self._group.create_dataset(item.name, data=values, dtype=dtype)
         describe(dataset, item, self._plane)
-        dataset.attrs["coordinates"] = "coordinate_angstrom"
+        label(dataset, coordinates="coordinate_angstrom")
         if item.dtype == "i8" and item is not ATTEMPTS:  # attempts are known of every point
             dataset.attrs["_FillValue"] = np.int64(MISSING_INTEGER)
         return dataset
@@ -152,13 +153,12 @@ def scale(group: h5py.Group, name: str, values: np.ndarray, meaning: str) -> h5p
     dtype = _TEXT if values.dtype == object else values.dtype
     dataset = group.create_dataset(name, data=values, dtype=dtype)
     dataset.make_scale(name)
-    dataset.attrs["long_name"] = meaning
+    label(dataset, long_name=meaning)
     return dataset
 
 
 def describe(dataset: h5py.Dataset, item: Field, axes: Sequence[h5py.Dataset]) -> None:
     """Attach unit, meaning and axes to an array."""
-    dataset.attrs["units"] = item.unit
-    dataset.attrs["long_name"] = item.meaning
+    label(dataset, units=item.unit, long_name=item.meaning)
     for index, axis in enumerate(axes):
         dataset.dims[index].attach_scale(axis)
