@@ -2,6 +2,7 @@
 
 import numpy as np
 import pytest
+from chemistry_support import Bench, diatomic, task
 from pyscf import dft, scf
 from pyscf.soscf import newton_ah
 from scission.chemistry import integrals, stability
@@ -115,3 +116,16 @@ def test_far_fragments_are_computed_once(monkeypatch):
             once = len(kernels)
 
     assert 0 < once == len(kernels)
+
+
+@pytest.mark.parametrize(("step", "status"), [(0.0, "converged"), (-0.05, "failed")])
+def test_no_reference_lies_below_the_exact_energy(tmp_path, step, status):
+    """The energy of H2 in a basis is bounded by full CI (variation principle); one that is lower is refused."""
+    bench, h2 = Bench(tmp_path), task("r0001", *diatomic("H", "H", 1.4), "UHF", basis="cc-pvdz")
+    record = bench.run(h2)
+    record.scalars["energy"] += step
+    bench.store.write(record)
+    finished = bench.run({**h2, "kind": "finish"})
+
+    assert finished.status == status
+    assert (finished.reason == "bound-violated") == (status == "failed")

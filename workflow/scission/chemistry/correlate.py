@@ -52,7 +52,7 @@ def correlate_point(task: dict[str, Any], store: Store, watch: Stopwatch) -> Rec
     solution = METHODS[task["correlation"]](task, field, reference, frozen, store)
     solution.correlation = task["correlation"]
     bounds = {"reference determinant": solution.energies["reference"]} if task["correlation"] == "FCI" else {}
-    record = guarded(record_of(solution, "point", task, watch), solution, bounds)
+    record = guarded(record_of(solution, "point", task, watch), solution, bounds, {})
     record.reference_stamp = reference.stamp
     _inherit(record, reference)
     return record

@@ -11,6 +11,7 @@ from scission.solution import Solution
 
 from . import scf
 from .bond_picture import describe_active_bond
+from .bounds import lower_bounds, upper_bounds
 from .casscf import finish_casscf, solve_casscf
 from .compare import least_step, likeness
 from .molecule import build_mole, overlap_roots
@@ -64,7 +65,8 @@ def finish_reference(task: dict[str, Any], store: Store, watch: Stopwatch) -> Re
         solution = solution_of_field(field, task["spec"], diagnose=True, bonds=task.get("bonds", ()))
         _keep_orbitals(solution)
     solution.notes = {**record.notes, **solution.notes, **task.get("notes", {})}
-    finished = guarded(record_of(solution, "reference", task, watch), solution, _upper_bounds(task, record))
+    bounds = upper_bounds(task, record), lower_bounds(task, record)
+    finished = guarded(record_of(solution, "reference", task, watch), solution, *bounds)
     finished.scalars["wall_s"] += record.scalars.get("wall_s", 0.0)
     finished.scalars["cpu_s"] += record.scalars.get("cpu_s", 0.0)
     finished.attempts, finished.history = record.attempts, record.history
@@ -88,25 +90,6 @@ def _solve(task: dict[str, Any], store: Store, watch: Stopwatch) -> Record:
         record.status, record.reason = "failed", "raised"
         record.message = f"orbitals are not orthonormal (largest deviation {error:.1e})"
     return record
-
-
-def _upper_bounds(task: dict[str, Any], record: Record) -> dict[str, float]:
-    """Return energies that the reference cannot lie above: for one active space state, the determinant's."""
-    if task["spec"]["reference"] != "CASSCF" or task["spec"].get("states", 1) > 1:
-        return {}
-    mole = build_mole(task["molecule"], task["spec"]["basis"], np.array(task["positions"]))
-    field = scf.converge(scf.build_field(mole, task["spec"]), _closest_determinant(record, mole))
-    return {"restricted determinant": float(field.e_tot)} if field.converged else {}
-
-
-def _closest_determinant(record: Record, mole: Any) -> np.ndarray:
-    """Return the density of the determinant of the most occupied orbitals, as a restricted field starts from."""
-    orbitals = carried(record, mole)
-    order = np.argsort(-orbitals.occ[0], kind="stable")
-    occ = np.zeros_like(orbitals.occ)
-    occ[0, order[: mole.nelec[1]]] = 2.0
-    occ[0, order[mole.nelec[1] : mole.nelec[0]]] = 1.0
-    return Orbitals(orbitals.coeff, occ).density()
 
 
 def _keep_orbitals(solution: Solution) -> None:

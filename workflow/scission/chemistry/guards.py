@@ -10,11 +10,13 @@ ENERGY_ROOM = 1e-6
 SPIN_ROOM = 1e-3
 
 
-def violation(solution: Solution, upper_bounds: dict[str, float]) -> tuple[str, str] | None:
+def violation(
+    solution: Solution, upper_bounds: dict[str, float], lower_bounds: dict[str, float]
+) -> tuple[str, str] | None:
     """Return (reason, message) of the first rule that a converged solution breaks, or ``None``.
 
     ``upper_bounds`` are energies (hartree) by name that a variational solution cannot lie above: every
-    determinant of the space it minimises over.
+    determinant of the space it minimises over; ``lower_bounds`` those it cannot lie below.
     """
     if not solution.converged:
         return None
@@ -25,6 +27,10 @@ def violation(solution: Solution, upper_bounds: dict[str, float]) -> tuple[str, 
         if solution.energy > bound + ENERGY_ROOM:
             words = f"energy {solution.energy:.8f} hartree lies above that of the {name}, {bound:.8f}"
             return "bound-violated", f"{words}: a higher solution"
+    for name, bound in lower_bounds.items():
+        if solution.energy < bound - ENERGY_ROOM:
+            words = f"energy {solution.energy:.8f} hartree lies below that of {name}, {bound:.8f}"
+            return "bound-violated", f"{words}: a variational energy cannot"
     return None
 
 

@@ -92,9 +92,11 @@ def record_of(
     return record
 
 
-def guarded(record: Record, solution: Solution, upper_bounds: dict[str, float]) -> Record:
+def guarded(
+    record: Record, solution: Solution, upper_bounds: dict[str, float], lower_bounds: dict[str, float]
+) -> Record:
     """Return the record, turned into a failed one if the solution breaks a bound or has the wrong spin."""
-    broken = violation(solution, upper_bounds)
+    broken = violation(solution, upper_bounds, lower_bounds)
     if broken is not None and record.status == "converged":
         record.status, (record.reason, record.message) = "failed", broken
     return record
