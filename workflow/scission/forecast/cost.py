@@ -52,7 +52,7 @@ _SHORTEST_S = 0.05
 _UNKNOWN_SPACE = 6
 """Active orbitals of a space that is not chosen yet."""
 
-_CORES = ((2, 0), (10, 1), (18, 5), (36, 9), (54, 18), (86, 27))
+_CORES = ((4, 0), (12, 1), (30, 5), (38, 9), (48, 14), (70, 18), (80, 23))
 """Nuclear charge up to which an atom keeps so many doubly occupied core orbitals frozen."""
 
 
@@ -71,7 +71,7 @@ def size_of(molecule: dict[str, Any], spec: dict[str, Any], frozen_core: bool = 
     n = n_functions(molecule, spec)
     charges = [ELEMENTS[s] for s in molecule["symbols"]]
     pairs = (sum(charges) - molecule["charge"]) / 2.0
-    core = sum(next((c for z, c in _CORES if charge <= z), 43) for charge in charges)
+    core = sum(next((c for z, c in _CORES if charge <= z), 34) for charge in charges)
     return Size(n, max(pairs - (core if frozen_core else 0), 0.5), max(n - pairs, 1.0), len(charges))
 
 
