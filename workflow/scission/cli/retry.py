@@ -8,9 +8,11 @@ from __future__ import annotations
 
 import argparse
 from collections.abc import Sequence
+from functools import partial
 from pathlib import Path
 
 from scission.cli.common import WRONG_INPUT, WrongInputError, find_layout, results_folder, tell
+from scission.cli.disk import watch_disk
 from scission.cli.run import add_run_options
 from scission.execution.layout import Layout, read_json
 
@@ -38,9 +40,9 @@ def main(args: argparse.Namespace, rest: Sequence[str]) -> int:
         source, settings = made_from(layout)
         rows = read_failures(args.failures)
         request = lambda: tell(request_points(layout, rows, args.remedy))  # noqa: E731
-        return run_campaign(
-            source, layout.folder.name, layout.folder.parent, args, rest, settings, prepare=request
-        )
+        name, results = layout.folder.name, layout.folder.parent
+        run = partial(run_campaign, source, name, results, args, rest, settings, prepare=request)
+        return watch_disk(layout.folder, run)
     except (WrongInputError, FailureListError, OSError, ValueError) as error:
         tell(str(error))
         return WRONG_INPUT
