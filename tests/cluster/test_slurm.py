@@ -5,6 +5,7 @@ tests/cluster/slurm install && .venv/bin/python -m pytest -m cluster tests/clust
 
 import os
 import shutil
+import signal
 import subprocess
 import tempfile
 import time
@@ -49,12 +50,6 @@ def folder(tmp_path_factory):
     return tmp_path_factory.mktemp("campaign")
 
 
-def run(campaign, *words, drill=None):
-    """Run a campaign on the cluster."""
-    words = ("run", str(campaign.file), "--results", str(campaign.results), *QUICK, *words)
-    return campaign.finish(campaign.command(*words), drill, timeout=500)
-
-
 def start(campaign, *words, **environment):
     """Start a campaign on the cluster without waiting for it."""
     words = campaign.command("run", str(campaign.file), "--results", str(campaign.results), *QUICK, *words)
@@ -68,10 +63,10 @@ def start(campaign, *words, **environment):
 
 
 def queue(*words):
-    """Comment and state of the jobs that wait or run."""
-    words = ["squeue", "--noheader", "--format=%i %T %k", *words]
+    """Number, state, time limit and comment of the jobs that wait or run."""
+    words = ["squeue", "--noheader", "--format=%i %T %l %k", *words]
     lines = subprocess.run(words, check=True, capture_output=True, text=True).stdout.splitlines()
-    return [line.split(maxsplit=2) for line in lines]
+    return [line.split(maxsplit=3) for line in lines]
 
 
 def wait_for(condition, timeout_s=180.0):
@@ -99,7 +94,9 @@ def test_after_kill_9_of_the_command_the_next_one_computes_nothing_twice(folder,
     first = start(there, *small, drill=drill, SCISSION_DRILL_JOURNAL=str(journal))
     wait_for(lambda: any(there.layout.running(key).exists() for key in drill))
     wait_for(
-        lambda: {"RUNNING", "PENDING"} <= {state for _, state, comment in queue() if "correlate" in comment}
+        lambda: (
+            {"RUNNING", "PENDING"} <= {state for _, state, _, comment in queue() if "correlate" in comment}
+        )
     )
     engine = read_json(there.layout.run_file)["engine"]
     first.kill()
@@ -120,17 +117,41 @@ def test_after_kill_9_of_the_command_the_next_one_computes_nothing_twice(folder,
     assert there.rows(without=COSTS) == here.rows(without=COSTS)
 
 
+def correlate_job(campaign, key):
+    """Number and time limit (hours, minutes, seconds) of the job that computes ``key`` by now."""
+    wait_for(campaign.layout.running(key).exists)
+    return next((number, limit) for number, _, limit, comment in queue() if "correlate" in comment)
+
+
 @pytest.mark.usefixtures("slurm")
-def test_points_that_fail_on_slurm_are_listed_and_healed(folder):
-    """One point raises, one is killed at each attempt: both are listed, a retry heals both."""
+def test_jobs_that_are_told_to_end_or_vanish_cost_no_point(folder):
+    """SIGTERM, as at a time limit: the job comes back with twice the time.  Gone for good: its points are lost.
+
+    A point that raises is listed too; a retry heals all.
+    """
     (folder / "bad").mkdir(exist_ok=True)
     campaign = Campaign(folder / "bad")
-    raised, killed = (campaign.key("cc", n) for n in (2, 5))
-    first = run(campaign, "--config", "block_seconds=60", drill={raised: "raise", killed: "kill"})
+    raised, told, vanished, last = (campaign.key("cc", n) for n in (2, 4, 5, 6))
+    drill = {raised: "raise", told: "pause:6", vanished: "pause:60"}
+    first = start(campaign, "--config", "block_seconds=60", drill=drill)
+    number, limit = correlate_job(campaign, told)
+    subprocess.run(["scancel", "--signal=TERM", number], check=True)
+    _, doubled = correlate_job(campaign, vanished)
+    os.kill(read_json(campaign.layout.running(vanished))["pid"], signal.SIGKILL)
+    said = first.communicate(timeout=400)[1]
 
-    assert first.returncode == 3, first.stderr
+    assert first.returncode == 3, said
+    assert minutes(doubled) == 2 * minutes(limit)
     listed = {row["key"]: (row["reason"], row["attempts"]) for row in campaign.rows("failures.csv")}
-    assert listed == {raised: ("raised", "1"), killed: ("killed", "2")}
-    second = campaign.finish(campaign.command("retry", str(campaign.layout.failures), *QUICK), timeout=500)
-    assert second.returncode == 0, second.stderr
+    assert listed == {raised: ("raised", "1"), vanished: ("lost", "1"), last: ("lost", "0")}
+    attempts = {row["key"]: row["attempts"] for row in campaign.rows() if row["status"] == "converged"}
+    assert {key for key, n in attempts.items() if n != "1"} == {told}
+    again = campaign.finish(campaign.command("retry", str(campaign.layout.failures), *QUICK), timeout=500)
+    assert again.returncode == 0, again.stderr
     assert campaign.rows("failures.csv") == []
+
+
+def minutes(limit):
+    """A time limit as squeue writes it, in minutes."""
+    hours, minute = ([0, *map(int, limit.split(":"))])[-3:-1]
+    return 60 * hours + minute
