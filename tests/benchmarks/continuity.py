@@ -28,7 +28,7 @@ import numpy as np
 import yaml
 from pyscf import cc, mcscf
 from scission.campaign import load_campaign
-from scission.chemistry import scf
+from scission.chemistry import integrals, scf
 from scission.chemistry.molecule import build_mole, root_overlap
 from scission.chemistry.orbitals import Orbitals, state_overlap_any_spin, subspace_overlap
 from scission.chemistry.tasks import run_task
@@ -193,6 +193,7 @@ def independent(plan: Plan) -> Curve:
 def _single(
     chain: dict[str, Any], positions: np.ndarray, correlated: bool
 ) -> tuple[float, Any, Callable[[Any, Any], float], bool]:
+    integrals.forget()  # a plain loop has none of the walk's
     mole = build_mole(chain["molecule"], chain["spec"]["basis"], positions)
     root, _ = root_overlap(mole)
     mean = scf.build_field(mole, chain["spec"])

@@ -80,6 +80,7 @@ def test_integrals_are_shared_at_a_geometry_and_not_beyond():
 def test_no_more_integrals_are_kept_than_there_is_room_for(monkeypatch):
     """Beyond the room the geometry that was not used for longest goes; the latest one stays in any case."""
     monkeypatch.setattr(integrals, "KEPT_BYTES", 1.0)
+    integrals.forget()
     first = build_field(_mole(N2, 2.31), {"reference": "RHF"})
     build_field(_mole(N2, 2.32), {"reference": "RHF"})
     again = build_field(_mole(N2, 2.31), {"reference": "RHF"})

@@ -38,6 +38,12 @@ def share(field: Any) -> Any:
     return field
 
 
+def forget() -> None:
+    """Drop everything that is kept, as a fresh process has it."""
+    _repulsion.clear()
+    _grids.clear()
+
+
 def _integrals(key: bytes, mole: gto.Mole) -> Array:
     """Return (pq|rs) with eightfold symmetry, packed, as the engine keeps it."""
     if key in _repulsion:
