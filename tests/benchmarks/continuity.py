@@ -8,7 +8,8 @@ For every scan and level it prints, for independent points from the engine's def
 this program, in the same run: points unconverged / above the best known / jumps between neighbours that were
 not reported as crossings, and processor seconds.  "Best known" is the lowest energy of either route at that
 length; for restricted references, which follow a state on purpose, and for coupled cluster, which is not
-variational, points above it are shown in brackets and are no error by themselves.
+variational, points above it are shown in brackets and are no error by themselves; so are active spaces that
+lie above another one, of the same size but of other orbitals.
 """
 
 from __future__ import annotations
@@ -95,6 +96,7 @@ class Curve:
     """
 
     energies: list[float] = field(default_factory=list)
+    spaces: list[Any] = field(default_factory=list)
     jumps: int = 0
     wrong_spin: int = 0
     seconds: float = 0.0
@@ -146,8 +148,16 @@ def carried(plan: Plan, folder: Path) -> tuple[Curve, list[dict[str, Any]]]:
             float(record.scalars["energy"]) if record is not None and good else float("nan")
         )
         curve.wrong_spin += int(record is not None and record.reason == "spin")
+        curve.spaces.append(_active_space(record))
     curve.jumps = _unreported(plan, store, crossings)
     return curve, crossings
+
+
+def _active_space(record: Any) -> Any:
+    if record is None or "active" not in record.arrays:
+        return None
+    n_core, n_active = (int(n) for n in record.arrays["active"][:2])
+    return record.arrays["mo_lowdin"][0][:, n_core : n_core + n_active]
 
 
 def _timed(task: dict[str, Any], store: Store, curve: Curve) -> dict[str, Any]:
@@ -182,6 +192,7 @@ def independent(plan: Plan) -> Curve:
             continue
         energy, here, compare, spin_is_right = _single(chain, np.array(node["positions"]), correlated)
         curve.energies.append(energy)
+        curve.spaces.append(here)
         curve.wrong_spin += not spin_is_right
         if last is not None and np.isfinite(energy):
             curve.jumps += compare(last, here) < SMOOTH
@@ -260,6 +271,10 @@ def compare(scan: str, level: str, basis: str) -> str:
         above = int(np.sum(energies > best + room))
         spin = f" spin {curve.wrong_spin}" if curve.wrong_spin else ""
         shown = f"({above})" if level in ("rhf", "ccsd", "uccsd") else str(above)
+        if level == "cas":
+            alike = [subspace_overlap(a, b) > SMOOTH for a, b in zip(ours.spaces, plain.spaces, strict=True)]
+            higher = energies > best + room
+            shown = f"{np.sum(higher & np.array(alike))}({np.sum(higher & ~np.array(alike))})"
         cells.append(f"{lost}/{shown}/{curve.jumps}{spin}  {curve.seconds:7.1f} s")
     walk = ours.seconds - ours.diagnosing
     ratios = f"{walk / plain.seconds:.2f}, with diagnostics {ours.seconds / plain.seconds:.2f}"
