@@ -24,7 +24,7 @@ from .write import campaign_digest
 BLOCK_SECONDS = 60.0
 """Work given to one job on a local machine, by the forecast; a cluster's profile asks for more."""
 
-_COSTLY = 4.0
+_COSTLY = 2.0
 """A chain that takes longer than so many blocks is cut into stages."""
 
 _CARRIES_AMPLITUDES = ("CCSD", "CCSD(T)")

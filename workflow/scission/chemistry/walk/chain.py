@@ -162,13 +162,25 @@ class ChainState:
     def finish(self) -> None:
         """Evaluate diagnostics of the nodes that are points and lack them or have changed."""
         for node in self.nodes:
-            record = self.record(node)
-            if node.auxiliary or record is None or not self.good(node):
-                continue
-            evaluated = bool(record.diagnostics or record.absent)
-            if not evaluated or node.key in self._touched or node.key in self.notes:
-                self._task(node, {"kind": "finish", "notes": self.notes.get(node.key, {})})
+            self._finish(node)
         self._locate_instability()
+
+    def finish_early(self, node: Node) -> None:
+        """Evaluate a node's diagnostics while the integrals of its geometry are at hand.
+
+        Should its state change later they are evaluated again; averaged states wait for their labels.
+        """
+        if self.chain["spec"].get("states", 1) < 2 and node.key not in self._fixed:
+            self._finish(node)
+
+    def _finish(self, node: Node) -> None:
+        record = self.record(node)
+        if node.auxiliary or record is None or not self.good(node):
+            return
+        evaluated = bool(record.diagnostics or record.absent)
+        if not evaluated or node.key in self._touched or node.key in self.notes:
+            self._task(node, {"kind": "finish", "notes": self.notes.get(node.key, {})})
+            self._touched.discard(node.key)
 
     def _locate_instability(self) -> None:
         """Find the length between two points where the triplet stability eigenvalue passes through zero."""

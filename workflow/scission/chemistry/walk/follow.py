@@ -21,9 +21,11 @@ def follow_from_anchor(state: ChainState) -> None:
     anchor = state.stretched if state.active else state.start
     if not state.settled(anchor):
         _establish(state, anchor)
+        state.finish_early(anchor)
     for node, _ in list(state.outward(anchor)):
         if not state.settled(node):
             _carry(state, node, anchor)
+            state.finish_early(node)
     _pursue(state)
 
 
