@@ -114,12 +114,31 @@ def claim(layout: Layout, job: str, poll_s: float = 1.0) -> Iterator[Claim]:
             print(f"{job} is still being computed by an earlier worker; waiting for it", flush=True)
             time.sleep(poll_s)
         else:
-            mine.path.unlink(missing_ok=True)
+            _clear_dead(mine.path)
     try:
         yield mine
     finally:
         if is_same(read_json(mine.path) or {}, mine.who):
             mine.path.unlink(missing_ok=True)
+
+
+def _clear_dead(path: Path) -> None:
+    """Remove a dead worker's claim, one process at a time: the next may have put its own there by then."""
+    turn = path.with_name(f".{path.name}.clearing")
+    try:
+        turn.touch(exist_ok=False)
+    except FileExistsError:
+        if not is_held(turn):  # somebody died in the few lines below
+            turn.unlink(missing_ok=True)
+        return
+    try:
+        before = path.stat()
+        if not is_held(path) and os.path.samestat(before, path.stat()):
+            path.unlink()
+    except FileNotFoundError:  # it went by itself
+        return
+    finally:
+        turn.unlink(missing_ok=True)
 
 
 def is_held(path: Path) -> bool:
