@@ -296,3 +296,17 @@ def test_an_attempt_written_twice_is_one_attempt():
 
     assert merge(good, bad) is good
     assert merge(bad, good).history == []
+
+
+@pytest.mark.parametrize(
+    ("extra", "executor"),
+    [
+        ((), "local"),
+        (("--cores", "2"), "local"),
+        (("--executor", "dryrun"), "dryrun"),
+        (("-e=slurm",), "slurm"),
+    ],
+)
+def test_the_executor_is_told_with_and_without_options_for_the_engine(tmp_path, extra, executor):
+    """A person's option goes before the profile's; no option at all is the usual case."""
+    assert engine.Command(tmp_path / "c.yaml", tmp_path, extra=extra).executor() == executor

@@ -70,7 +70,7 @@ class Command:
         Raises:
             FileNotFoundError: there is no such profile.
         """
-        for word, following in zip(self.extra, [*self.extra[1:], ""], strict=True):
+        for word, following in zip(self.extra, [*self.extra[1:], ""], strict=False):
             option, _, value = word.partition("=")
             if option in ("--executor", "-e"):
                 return value or following
