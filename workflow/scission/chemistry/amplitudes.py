@@ -15,7 +15,7 @@ from .molecule import root_overlap
 
 Array = NDArray[np.float64]
 
-_KEPT_BYTES = 256e6
+_KEPT_BYTES = 64e6
 """Amplitudes kept in this process: levels of a geometry and neighbours of a scan ask for the same ones one
 after another.  The latest ones are kept whatever their size."""
 

@@ -34,7 +34,7 @@ def triplet_instability(field: Any) -> tuple[float, Array]:
     Negative: an unrestricted solution lies lower.
     """
     _, _, times, diagonal = stability._gen_hop_rhf_external(field)
-    return _lowest(times, diagonal, tolerance=1e-8)
+    return _lowest(times, diagonal, tolerance=1e-7)
 
 
 def internal_instability(field: Any) -> tuple[float, Array]:

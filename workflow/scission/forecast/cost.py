@@ -48,6 +48,8 @@ _UNRESTRICTED_FACTOR = 4.0
 _EXTRA_START_S = 1.5
 _DETERMINANTS_PER_SECOND = 4.0e4
 _BASE_MEMORY_MB = 500.0
+_KEPT_MB = 320.0
+"""Integrals and amplitudes of earlier geometries that a process keeps (:mod:`scission.chemistry.integrals`)."""
 _SHORTEST_S = 0.05
 _UNKNOWN_SPACE = 6
 """Active orbitals of a space that is not chosen yet."""
@@ -136,14 +138,14 @@ def fragment_seconds(work: dict[str, Any]) -> float:
 def reference_memory_mb(molecule: dict[str, Any], spec: dict[str, Any]) -> float:
     """Return the memory to ask for a chain of references, MB: integrals in memory and room for the engine."""
     n = n_functions(molecule, spec)
-    return _BASE_MEMORY_MB + 2.5 * n**4 / 8 * 8 / 1e6
+    return _BASE_MEMORY_MB + _KEPT_MB + 2.5 * n**4 / 8 * 8 / 1e6
 
 
 def correlate_memory_mb(work: dict[str, Any]) -> float:
     """Return the memory to ask for a point's correlation, MB."""
     n = n_functions(work["molecule"], work["spec"])
     unrestricted = work["spec"]["reference"] in ("UHF", "UKS", "ROHF")
-    memory = _BASE_MEMORY_MB + (6.0 if unrestricted else 2.5) * n**4 / 4 * 8 / 1e6
+    memory = _BASE_MEMORY_MB + _KEPT_MB + (6.0 if unrestricted else 2.5) * n**4 / 4 * 8 / 1e6
     if work["correlation"] == "FCI":
         memory += 20 * determinants(work) * 8 / 1e6
     return memory

@@ -21,7 +21,7 @@ from .stages import FEWEST_NODES, cut
 from .types import Chain, Job, Plan, Point
 from .write import campaign_digest
 
-BLOCK_SECONDS = 60.0
+BLOCK_SECONDS = 30.0
 """Work given to one job on a local machine, by the forecast; a cluster's profile asks for more."""
 
 _COSTLY = 2.0
