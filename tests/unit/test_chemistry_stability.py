@@ -7,7 +7,7 @@ from pyscf import dft, scf
 from pyscf.soscf import newton_ah
 from scission.chemistry import integrals, stability
 from scission.chemistry.molecule import build_mole
-from scission.chemistry.scf import build_field, follow_instability
+from scission.chemistry.scf import build_field, converge, follow_instability
 
 N2 = {"symbols": ["N", "N"], "charge": 0, "multiplicity": 1}
 O2 = {"symbols": ["O", "O"], "charge": 0, "multiplicity": 3}
@@ -47,8 +47,7 @@ def test_following_an_instability_ends_in_a_minimum():
     restricted = _converged(N2, "RHF", 3.6)
     value, vector = stability.triplet_instability(restricted)
     start = stability.unrestricted_along(restricted, vector)
-    field = build_field(restricted.mol, {"reference": "UHF"})
-    field.kernel(dm0=start.density())
+    field = converge(build_field(restricted.mol, {"reference": "UHF"}), start.density())
     lower, curvature = follow_instability(field)
 
     assert value < -0.1
