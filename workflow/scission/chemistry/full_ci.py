@@ -17,6 +17,7 @@ from .solutions import solution_of_field, take_facts
 ENERGY_TOLERANCE = 1e-10
 MAX_CYCLES = 300
 _SPIN_SHIFT = 0.5
+_GUESSES = 4
 _LONGEST_STRING = 63
 """Orbitals that the engine's occupation strings hold in one word of 64 bits."""
 
@@ -29,7 +30,7 @@ def full_ci(task: dict[str, Any], field: Any, _: Record, frozen: int, __: Store)
     mc = mcscf.CASCI(restricted, size, electrons)
     mc.canonicalization, mc.verbose = False, 0
     _choose_solver(mc, mole.spin / 2.0, size, electrons)
-    mc.kernel()
+    _solve(mc, size, electrons)
     solution = solution_of_field(field, task["spec"], diagnose=False)
     solution.energies["correlation"] = float(mc.e_tot) - solution.energy
     solution.energy, solution.converged = float(mc.e_tot), bool(np.all(mc.fcisolver.converged))
@@ -43,8 +44,9 @@ def full_ci(task: dict[str, Any], field: Any, _: Record, frozen: int, __: Store)
 def _choose_solver(mc: Any, spin: float, size: int, electrons: tuple[int, int]) -> None:
     """Give ``mc`` a solver that stays in the spin asked for.
 
-    The engine's spin penalty works on occupation strings of 63 orbitals at most; a pair of electrons needs no
-    penalty, because a symmetric matrix of coefficients is a singlet.
+    A singlet's matrix of coefficients is symmetric, which keeps triplets out: far apart they have its energy,
+    and a search that starts from one of them ends in an ionic state.  Higher spins are kept out by the engine's
+    penalty, which works on occupation strings of 63 orbitals at most; a pair of electrons needs none.
 
     Raises:
         ValueError: more than a pair of electrons in more orbitals than that.
@@ -55,10 +57,24 @@ def _choose_solver(mc: Any, spin: float, size: int, electrons: tuple[int, int]) 
             f"full CI of {sum(electrons)} electrons in {size} orbitals: more than two electrons need "
             f"{_LONGEST_STRING} orbitals or fewer; take a smaller basis"
         )
-    mc.fcisolver = fci.direct_spin0.FCI(mc.mol) if long else fci.direct_spin1.FCI(mc.mol)
+    solver = fci.direct_spin0 if spin == 0.0 else fci.direct_spin1
+    mc.fcisolver = solver.FCI(mc.mol)
     mc.fcisolver.conv_tol, mc.fcisolver.max_cycle = ENERGY_TOLERANCE, MAX_CYCLES
-    if not long:
+    if not long and electrons != (1, 1):
         mc.fix_spin_(shift=_SPIN_SHIFT, ss=spin * (spin + 1.0))
+
+
+def _solve(mc: Any, size: int, electrons: tuple[int, int]) -> None:
+    """Find the lowest state of ``mc`` from several determinants at once.
+
+    A single one may have a symmetry of its own, and the search then never leaves it: H2 at 10 angstrom in its own
+    orbitals ended in an ionic state.
+    """
+    one, core = mc.get_h1eff()
+    two = mc.get_h2eff()
+    diagonal = mc.fcisolver.make_hdiag(one, two, size, electrons)
+    guesses = mc.fcisolver.get_init_guess(size, electrons, min(_GUESSES, diagonal.size), diagonal)
+    mc.e_tot, mc.ci = mc.fcisolver.kernel(one, two, size, electrons, ci0=guesses, ecore=core)
 
 
 def _spin_square(vector: Any, size: int, electrons: tuple[int, int]) -> float:
