@@ -46,7 +46,14 @@ def _flags(part: pd.DataFrame) -> dict[str, object]:
         first = outward[outward.flag == flag].head(1)
         row[f"{flag} from / angstrom"] = "" if first.empty else f"{first.from_angstrom.iloc[0]:.2f}"
         reasons = reasons if first.empty else str(first.reasons.iloc[0])
-    return row | {"reasons there": reasons}
+    return row | {"reasons there": _first_three(reasons)}
+
+
+def _first_three(reasons: str) -> str:
+    """The first three reasons, and how many more there are: a dozen would make a column of one word a line."""
+    told = reasons.split("; ")
+    more = f"; and {len(told) - 3} more" if len(told) > 3 else ""
+    return "; ".join(told[:3]) + more
 
 
 def onset_table(onsets: pd.DataFrame) -> pd.DataFrame:

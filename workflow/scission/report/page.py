@@ -21,7 +21,8 @@ body { font: 15px/1.5 "DejaVu Sans", Verdana, sans-serif; color: #222; backgroun
 h1 { font-size: 1.6rem; margin-bottom: 0.2rem; } h2 { font-size: 1.15rem; margin-top: 2.2rem; }
 table { border-collapse: collapse; font-size: 0.85rem; margin: 0.6rem 0; }
 th, td { padding: 0.2rem 0.7rem; text-align: left; vertical-align: top; border-bottom: 1px solid #ddd; }
-th { border-bottom: 1.5px solid #222; white-space: nowrap; }
+th { border-bottom: 1.5px solid #222; }
+td.words { min-width: 17rem; }
 td.number { text-align: right; font-variant-numeric: tabular-nums; white-space: nowrap; }
 .wide { overflow-x: auto; } figure { margin: 1rem 0 2rem; } img { max-width: 100%; height: auto; }
 figcaption, .small { font-size: 0.85rem; color: #444; }
@@ -134,7 +135,7 @@ def html_table(table: pd.DataFrame) -> str:
 
 def _cell(value: object) -> str:
     if isinstance(value, str):
-        return f"<td>{escape(value)}</td>"
+        return f'<td class="words">{escape(value)}</td>' if len(value) > 40 else f"<td>{escape(value)}</td>"
     text = f"{value:.4g}" if isinstance(value, float) else str(value)
     return f'<td class="number">{escape(text)}</td>'
 
