@@ -12,7 +12,6 @@ from scission.campaign.model import PICTURES
 from scission.records.store import Record
 
 from . import scf
-from .molecule import build_mole
 from .orbitals import Orbitals
 from .starts import carried
 
@@ -20,30 +19,27 @@ FEW_DETERMINANTS = 400
 """Up to so many the whole Hamiltonian is diagonalised in milliseconds, and no root can be missed."""
 
 
-def upper_bounds(task: dict[str, Any], record: Record) -> dict[str, float]:
+def upper_bounds(spec: dict[str, Any], record: Record, mole: gto.Mole) -> dict[str, float]:
     """Return energies (hartree) that the reference cannot lie above: of one active-space state the determinant's."""
-    if task["spec"]["reference"] != "CASSCF" or task["spec"].get("states", 1) > 1:
+    if spec["reference"] != "CASSCF" or spec.get("states", 1) > 1:
         return {}
-    mole = build_mole(task["molecule"], task["spec"]["basis"], np.array(task["positions"]))
-    field = scf.converge(scf.build_field(mole, task["spec"]), _closest_determinant(record, mole))
+    field = scf.converge(scf.build_field(mole, spec), _closest_determinant(record, mole))
     return {"restricted determinant": float(field.e_tot)} if field.converged else {}
 
 
-def lower_bounds(task: dict[str, Any], record: Record) -> dict[str, float]:
+def lower_bounds(spec: dict[str, Any], record: Record, mole: gto.Mole) -> dict[str, float]:
     """Return energies (hartree) that the reference cannot lie below: the exact one, where that is cheap."""
-    spec = task["spec"]
     if spec.get("functional") or spec["reference"] in PICTURES:
         return {}
-    mole = build_mole(task["molecule"], spec["basis"], np.array(task["positions"]))
     n, (alpha, beta) = mole.nao, mole.nelec
     if comb(n, alpha) * comb(n, beta) > FEW_DETERMINANTS:
         return {}
-    return {"full configuration interaction": _exact(task, mole, carried(record, mole).coeff[0])}
+    return {"full configuration interaction": _exact(spec, mole, carried(record, mole).coeff[0])}
 
 
-def _exact(task: dict[str, Any], mole: gto.Mole, coeff: np.ndarray) -> float:
+def _exact(spec: dict[str, Any], mole: gto.Mole, coeff: np.ndarray) -> float:
     """Return the lowest eigenvalue of all determinants of the molecule's spin projection, hartree."""
-    field = scf.build_field(mole, {**task["spec"], "functional": None})
+    field = scf.build_field(mole, spec)
     one = coeff.T @ field.get_hcore() @ coeff
     two = ao2mo.restore(1, ao2mo.full(field._eri, coeff), mole.nao)
     _, hamiltonian = fci.direct_spin1.pspace(one, two, mole.nao, mole.nelec, np=FEW_DETERMINANTS)

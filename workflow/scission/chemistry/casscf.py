@@ -91,6 +91,14 @@ def casci_object(
     return mc
 
 
+def second_order_casscf(mole: gto.Mole, spec: dict[str, Any], sizes: Array, start: Any) -> Any:
+    """Return the engine's object after second-order steps from the orbitals and CI vectors of ``start``."""
+    mc = mcscf.newton(casci_object(mole, spec, sizes, orbital_step=True))
+    mc.max_cycle_macro = MAX_MACRO_CYCLES
+    mc.kernel(np.asarray(start.mo_coeff), ci0=start.ci)
+    return mc
+
+
 def finish_casscf(task: dict[str, Any], record: Record) -> Solution:
     """Return a finished record's wavefunction with natural occupations and leading weight."""
     mole = build_mole(task["molecule"], task["spec"]["basis"], np.array(task["positions"]))
@@ -176,9 +184,7 @@ def _optimise(
     if mc is None or not mc.converged or not _right_spin(mc, mole):
         mc = _iterated(task, working, coeff, guess, sizes, penalty=True)
     if not mc.converged:
-        first, mc = mc, mcscf.newton(casci_object(mole, task["spec"], sizes, orbital_step=True))
-        mc.max_cycle_macro = MAX_MACRO_CYCLES
-        mc.kernel(np.asarray(first.mo_coeff), ci0=first.ci)
+        mc = second_order_casscf(mole, task["spec"], sizes, mc)
     found = list(mc.ci) if averaged else [mc.ci]
     energies = np.atleast_1d(mc.e_states if averaged else mc.e_tot)
     solution = _solution(

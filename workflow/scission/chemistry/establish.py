@@ -52,20 +52,20 @@ def finish_reference(task: dict[str, Any], store: Store, watch: Stopwatch) -> Re
     record = _required(store, task["key"])
     if record.status != "converged":
         return record
+    mole = build_mole(task["molecule"], task["spec"]["basis"], np.array(task["positions"]))
     if task["spec"]["reference"] == "CASSCF":
         solution = finish_casscf(task, record)
         describe_active_bond(solution, task)
     elif task["spec"]["reference"] in PICTURE_FUNCTIONS:
         solution = solve_picture(task)
     else:
-        mole = build_mole(task["molecule"], task["spec"]["basis"], np.array(task["positions"]))
         field = scf.put_orbitals(
             scf.build_field(mole, task["spec"]), carried(record, mole), record.scalars["energy"]
         )
         solution = solution_of_field(field, task["spec"], diagnose=True, bonds=task.get("bonds", ()))
         _keep_orbitals(solution)
     solution.notes = {**record.notes, **solution.notes, **task.get("notes", {})}
-    bounds = upper_bounds(task, record), lower_bounds(task, record)
+    bounds = upper_bounds(task["spec"], record, mole), lower_bounds(task["spec"], record, mole)
     finished = guarded(record_of(solution, "reference", task, watch), solution, *bounds)
     finished.scalars["wall_s"] += record.scalars.get("wall_s", 0.0)
     finished.scalars["cpu_s"] += record.scalars.get("cpu_s", 0.0)

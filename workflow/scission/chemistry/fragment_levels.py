@@ -8,14 +8,14 @@ from typing import Any
 
 import numpy as np
 from numpy.typing import NDArray
-from pyscf import gto, mcscf
+from pyscf import gto
 from pyscf.data.elements import chemcore
 
 from scission.records.store import Record, Store
 from scission.solution import Solution
 
 from .bond_picture import localise, partition
-from .casscf import MAX_MACRO_CYCLES, casci_object, finish_casscf
+from .casscf import casci_object, finish_casscf, second_order_casscf
 from .correlate import METHODS
 from .molecule import build_mole, root_overlap
 from .recording import Stopwatch, inputs_of, provenance, record_of
@@ -203,12 +203,7 @@ def _optimised(
 def _converge(task: dict[str, Any], mole: gto.Mole, sizes: Array, coeff: Array, orbital_step: bool) -> Any:
     mc = casci_object(mole, task["spec"], sizes, orbital_step)
     mc.kernel(coeff)
-    if orbital_step and not mc.converged:
-        second = mcscf.newton(casci_object(mole, task["spec"], sizes, True))
-        second.max_cycle_macro = MAX_MACRO_CYCLES
-        second.kernel(mc.mo_coeff, ci0=mc.ci)
-        return second
-    return mc
+    return mc if mc.converged or not orbital_step else second_order_casscf(mole, task["spec"], sizes, mc)
 
 
 def _as_solution(task: dict[str, Any], record: Record) -> Solution:
