@@ -14,7 +14,7 @@ from dataclasses import dataclass, field, replace
 from pathlib import Path
 from types import FrameType
 
-from scission.cli.common import POINTS_FAILED, WrongInputError, tell
+from scission.cli.common import FAULT, POINTS_FAILED, WrongInputError, tell
 from scission.execution import engine, planning
 from scission.execution.layout import Layout, read_json
 from scission.execution.markers import live_workers
@@ -23,7 +23,6 @@ from scission.execution.processes import identity, is_alive
 from scission.execution.progress import Progress, duration
 from scission.execution.runfile import CONFIRM_S, AlreadyRunningError, RunFile, hold
 
-FAULT = 1
 _LINES_OF_TROUBLE = 40
 _EVERY_S = {True: 1.0, False: 15.0}
 """How often progress is shown, s: on a terminal, elsewhere."""

@@ -14,7 +14,6 @@ if TYPE_CHECKING:
 FAULT = 1
 WRONG_INPUT = 2
 POINTS_FAILED = 3
-INTERRUPTED = 130
 DEMO = PROJECT / "config" / "demo.yaml"
 
 

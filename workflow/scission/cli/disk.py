@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Callable
 from pathlib import Path
 
-from scission.cli.common import FAULT, INTERRUPTED, POINTS_FAILED, WRONG_INPUT, tell
+from scission.cli.common import FAULT, POINTS_FAILED, WRONG_INPUT, tell
 
 
 def watch_disk(folder: Path, run: Callable[[], int]) -> int:
@@ -14,7 +14,7 @@ def watch_disk(folder: Path, run: Callable[[], int]) -> int:
     Raises:
         OSError: the file system refuses something else.
     """
-    from scission.execution import storage
+    from scission.execution import engine, storage
 
     words = storage.trouble(folder)
     if words:
@@ -28,7 +28,7 @@ def watch_disk(folder: Path, run: Callable[[], int]) -> int:
             raise
         tell(f"{words} ({error})")
         return FAULT
-    ended_badly = status not in (0, WRONG_INPUT, POINTS_FAILED, INTERRUPTED)
+    ended_badly = status not in (0, WRONG_INPUT, POINTS_FAILED, engine.INTERRUPTED)
     if ended_badly and (words := storage.trouble(folder, storage.SCARCE_BYTES)):
         tell(words)
     return status

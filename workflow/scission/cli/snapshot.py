@@ -18,7 +18,7 @@ from itertools import chain
 from operator import itemgetter
 from pathlib import Path
 
-from scission.execution.layout import Layout, read_json
+from scission.execution.layout import Layout, entries, read_json
 from scission.execution.markers import live_workers
 
 WINDOW_S = 900.0
@@ -150,7 +150,7 @@ class Watcher:
     def _summaries(self) -> Iterator[Told]:
         """Give what jobs, finished and at work, have told."""
         for folder in (self.layout.job_done("x").parent, self.layout.worker("x").parent):
-            for entry in _entries(folder, ".json"):
+            for entry in entries(folder, ".json"):
                 yield self._told_by(entry)
 
     def _told_by(self, entry: os.DirEntry[str]) -> Told:
@@ -197,22 +197,14 @@ def _count(keys: Collection[str], there: set[str], bad: set[str], markers: dict[
     return Count(len(keys), done - again - failed, running, failed)
 
 
-def _entries(folder: Path, suffix: str) -> Iterator[os.DirEntry[str]]:
-    try:
-        with os.scandir(folder) as entries:
-            yield from (e for e in entries if e.name.endswith(suffix) and not e.name.startswith("."))
-    except (FileNotFoundError, NotADirectoryError):
-        return
-
-
 def _keys(root: Path) -> set[str]:
-    return {e.name[:-4] for group in _entries(root, "") for e in _entries(Path(group.path), ".npz")}
+    return {e.name[:-4] for group in entries(root, "") for e in entries(Path(group.path), ".npz")}
 
 
 def _markers(layout: Layout, jobs: set[str]) -> Iterator[tuple[str, float]]:
     """Give key and age (s) of every calculation at work; markers of dead workers do not count."""
     now = time.time()
-    for entry in _entries(layout.running("x").parent, ".json"):
+    for entry in entries(layout.running("x").parent, ".json"):
         marker = read_json(Path(entry.path))
         if marker is not None and marker.get("job") in jobs:
             try:
@@ -248,9 +240,9 @@ def _pace(folder: Path) -> float:
 def _rate(root: Path) -> float:
     """Return the records a second below one folder, from the times of a fair sample of them."""
     now, times, looked_at = time.time(), list[float](), 0
-    groups = sorted(entry.path for entry in _entries(root, ""))
+    groups = sorted(entry.path for entry in entries(root, ""))
     for group in groups:
-        times += [entry.stat().st_mtime for entry in _entries(Path(group), ".npz")]
+        times += [entry.stat().st_mtime for entry in entries(Path(group), ".npz")]
         looked_at += 1
         if len(times) > _SAMPLED:
             break

@@ -3,6 +3,8 @@
 from __future__ import annotations
 
 import json
+import os
+from collections.abc import Iterator
 from dataclasses import dataclass
 from pathlib import Path
 from typing import Any
@@ -73,6 +75,15 @@ class Layout:
     def failures(self) -> Path:
         """List of the points without a good result."""
         return self.folder / "failures.csv"
+
+
+def entries(folder: Path, suffix: str) -> Iterator[os.DirEntry[str]]:
+    """Give what lies in a folder and has that ending, hidden files left out; nothing if there is no such folder."""
+    try:
+        with os.scandir(folder) as found:
+            yield from (e for e in found if e.name.endswith(suffix) and not e.name.startswith("."))
+    except (FileNotFoundError, NotADirectoryError):
+        return
 
 
 def read_json(path: Path) -> dict[str, Any] | None:

@@ -9,11 +9,11 @@ from __future__ import annotations
 
 import hashlib
 import os
-from collections.abc import Iterable, Iterator
+from collections.abc import Iterator
 from pathlib import Path
 from typing import Any
 
-from scission.execution.layout import Layout, read_json
+from scission.execution.layout import Layout, entries, read_json
 from scission.execution.ledger import record_kind
 from scission.records.atomic import write_whole
 from scission.records.store import DAMAGED, FOLDERS, Store
@@ -72,16 +72,8 @@ def _written(layout: Layout) -> dict[Place, int]:
 
 
 def _times(root: Path) -> Iterator[tuple[str, int]]:
-    for group in _entries(root):
-        yield from ((e.name, e.stat().st_mtime_ns) for e in _entries(group.path) if e.name.endswith(".npz"))
-
-
-def _entries(folder: Path | str) -> Iterable[os.DirEntry[str]]:
-    try:
-        with os.scandir(folder) as entries:
-            return list(entries)
-    except (FileNotFoundError, NotADirectoryError):
-        return []
+    for group in entries(root, ""):
+        yield from ((e.name, e.stat().st_mtime_ns) for e in entries(Path(group.path), ".npz"))
 
 
 def _time(path: Path) -> int | None:

@@ -11,7 +11,7 @@ import pandas as pd
 import xarray as xr
 
 from scission.handover.extxyz import write_extxyz
-from scission.handover.opened import OpenCampaign, Shelf, described
+from scission.handover.opened import OpenCampaign, Shelf, Tabled, described
 from scission.tables import COLUMNS, Column
 from scission.units import HARTREE_IN_KCAL_PER_MOL
 
@@ -21,7 +21,7 @@ _SAME_ANGSTROM = 6
 """Decimals to which two lengths must agree to be one point of a comparison."""
 
 
-class Campaigns:
+class Campaigns(Tabled):
     """Some campaigns as one: tables with a first column ``campaign``, scans as ``campaign/scan``.
 
     Raises:
@@ -41,16 +41,6 @@ class Campaigns:
         """Every table that any member has."""
         names = [name for name in COLUMNS if any(name in c.tables for c in self.members)]
         return Shelf(names, self._read)
-
-    @property
-    def points(self) -> pd.DataFrame:
-        """One row for every planned point of every campaign."""
-        return self.tables["points"]
-
-    @property
-    def failures(self) -> pd.DataFrame:
-        """The points without a result."""
-        return self.tables["failures"]
 
     @cached_property
     def scans(self) -> Shelf[xr.Dataset]:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from abc import ABC, abstractmethod
 from collections.abc import Callable, Iterator, Mapping
 from functools import cached_property
 from pathlib import Path
@@ -15,8 +16,6 @@ from scission.handover.extxyz import write_extxyz
 from scission.tables import COLUMNS, Column
 
 Content = TypeVar("Content")
-
-_PANDAS = {"str": "str", "float": "float64", "int": "Int64", "bool": "boolean"}
 
 
 class Shelf(Mapping[str, Content], Generic[Content]):
@@ -40,7 +39,26 @@ class Shelf(Mapping[str, Content], Generic[Content]):
         return len(self._names)
 
 
-class OpenCampaign:
+class Tabled(ABC):
+    """What has tables: the ones asked for most by a name of their own."""
+
+    @property
+    @abstractmethod
+    def tables(self) -> Shelf[pd.DataFrame]:
+        """Every table by name, the failure list among them."""
+
+    @property
+    def points(self) -> pd.DataFrame:
+        """One row for every planned point."""
+        return self.tables["points"]
+
+    @property
+    def failures(self) -> pd.DataFrame:
+        """The points without a result, with reason and suggested remedy."""
+        return self.tables["failures"]
+
+
+class OpenCampaign(Tabled):
     """What a campaign has given so far; nothing is read before it is asked for.
 
     Attributes:
@@ -62,16 +80,6 @@ class OpenCampaign:
         """Every table of the campaign, by name, the failure list among them."""
         there = [name for name in COLUMNS if self._table_file(name).is_file()]
         return Shelf(there, self._read_table)
-
-    @property
-    def points(self) -> pd.DataFrame:
-        """One row for every planned point."""
-        return self.tables["points"]
-
-    @property
-    def failures(self) -> pd.DataFrame:
-        """The points without a result, with reason and suggested remedy."""
-        return self.tables["failures"]
 
     @cached_property
     def scans(self) -> Shelf[xr.Dataset]:
@@ -123,12 +131,8 @@ class OpenCampaign:
             table = pd.read_parquet(path.with_suffix(".parquet"))
         else:
             table = pd.read_csv(path, keep_default_na=False, na_values=_no_words(name))
-        known = {column: dtype for column, dtype in _types(name).items() if column in table.columns}
+        known = {c.name: c.pandas_dtype for c in COLUMNS[name] if c.name in table.columns}
         return described(table.astype(known), COLUMNS[name])
-
-
-def _types(name: str) -> dict[str, Any]:
-    return {column.name: _PANDAS[column.dtype] for column in COLUMNS[name]}
 
 
 def _no_words(name: str) -> dict[str, list[str]]:

@@ -9,6 +9,7 @@ import pandas as pd
 
 from scission.report.canvas import STYLE, Figure, blank, mpl
 from scission.report.style import INK, looks
+from scission.report.trust import three_reasons
 from scission.thresholds.rule import LABELS
 
 _ROW, _HEAD, _FOOT, _WIDTH = 0.2, 0.75, 0.55, 8.0
@@ -51,9 +52,9 @@ def _flags(part: pd.DataFrame) -> dict[str, object]:
 
 def _first_three(reasons: str) -> str:
     """The first three reasons, and how many more there are: a dozen would make a column of one word a line."""
-    told = reasons.split("; ")
-    more = f"; and {len(told) - 3} more" if len(told) > 3 else ""
-    return "; ".join(told[:3]) + more
+    told = three_reasons(reasons)
+    left = reasons.count("; ") - told.count("; ")
+    return f"{told}; and {left} more" if left else told
 
 
 def onset_table(onsets: pd.DataFrame) -> pd.DataFrame:

@@ -85,7 +85,7 @@ def headline(verdicts: pd.DataFrame, width: int = 125) -> str:
     first = verdicts[verdicts.level == verdicts.level.iloc[0]].sort_values("from_angstrom")
     outward = first.iloc[int(np.argmax((first.flag == "single-reference").to_numpy())) :]
     said = [
-        f"{flag} from {start:.2f} angstrom on: {_three(reasons)}"
+        f"{flag} from {start:.2f} angstrom on: {three_reasons(reasons)}"
         for flag, start, reasons in zip(outward.flag, outward.from_angstrom, outward.reasons, strict=True)
         if flag in _WORST
     ]
@@ -95,6 +95,6 @@ def headline(verdicts: pd.DataFrame, width: int = 125) -> str:
     return "\n".join(shorten(words, width, placeholder=" ...") for words in said[:2])
 
 
-def _three(reasons: str) -> str:
-    """The first three reasons."""
+def three_reasons(reasons: str) -> str:
+    """The first three of some reasons."""
     return "; ".join(reasons.split("; ")[:3])

@@ -10,6 +10,8 @@ from typing import NamedTuple
 
 from scission.records.schema import FLAGS, STATUSES
 
+_PANDAS = {"str": "str", "float": "float64", "int": "Int64", "bool": "boolean"}
+
 
 class Column(NamedTuple):
     """One column: ``dtype`` is ``str``, ``float``, ``int`` or ``bool``; ``unit`` is "1" for none."""
@@ -18,6 +20,11 @@ class Column(NamedTuple):
     dtype: str
     unit: str
     meaning: str
+
+    @property
+    def pandas_dtype(self) -> str:
+        """The type in a pandas frame, one that has a missing value."""
+        return _PANDAS[self.dtype]
 
 
 _SCAN = Column("scan", "str", "1", "name of the scan in the campaign file")

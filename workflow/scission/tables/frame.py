@@ -32,11 +32,9 @@ def frame(table: str, rows: Iterable[Mapping[str, Any]]) -> pd.DataFrame:
 
 def _series(column: Column, values: list[Any]) -> pd.Series:
     if column.dtype == "str":
-        return pd.Series([plain_text(value) for value in values], dtype="str")
-    if column.dtype == "float":
-        return pd.Series([np.nan if value is None else value for value in values], dtype="float64")
-    kind = {"int": "Int64", "bool": "boolean"}[column.dtype]
-    return pd.Series([pd.NA if value is None else value for value in values], dtype=kind)
+        return pd.Series([plain_text(value) for value in values], dtype=column.pandas_dtype)
+    missing = np.nan if column.dtype == "float" else pd.NA
+    return pd.Series([missing if value is None else value for value in values], dtype=column.pandas_dtype)
 
 
 def plain_text(value: object) -> str:

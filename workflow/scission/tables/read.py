@@ -11,7 +11,6 @@ import pyarrow.parquet as pq
 from scission.tables.columns import COLUMNS
 from scission.tables.write import FAILURES
 
-_PANDAS = {"str": "str", "float": "float64", "int": "Int64", "bool": "boolean"}
 _FROM_ARROW = {pa.int64(): pd.Int64Dtype(), pa.bool_(): pd.BooleanDtype()}
 
 
@@ -37,4 +36,4 @@ def _failures(folder: Path) -> pd.DataFrame:
 
 
 def _typed(name: str, table: pd.DataFrame) -> pd.DataFrame:
-    return table.astype({column.name: _PANDAS[column.dtype] for column in COLUMNS[name]})
+    return table.astype({column.name: column.pandas_dtype for column in COLUMNS[name]})
