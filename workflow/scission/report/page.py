@@ -17,7 +17,8 @@ from scission.report.overview import CAUTION, best_constants, counts, failure_co
 
 _STYLE = """
 body { font: 15px/1.5 "DejaVu Sans", Verdana, sans-serif; color: #222; background: #fff;
-       max-width: 64rem; margin: 2rem auto; padding: 0 1rem; }
+       max-width: 84rem; margin: 2rem auto; padding: 0 1rem; }
+p, figcaption { max-width: 64rem; }
 h1 { font-size: 1.6rem; margin-bottom: 0.2rem; } h2 { font-size: 1.15rem; margin-top: 2.2rem; }
 table { border-collapse: collapse; font-size: 0.85rem; margin: 0.6rem 0; }
 th, td { padding: 0.2rem 0.7rem; text-align: left; vertical-align: top; border-bottom: 1px solid #ddd; }
